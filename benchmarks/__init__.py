@@ -1,0 +1,1 @@
+"""Commands that measure the package on lists of published integrals."""
