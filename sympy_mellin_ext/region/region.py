@@ -1,0 +1,390 @@
+"""A region of parameters: a conjunction of inequalities and other conditions."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Mapping, Sequence
+from typing import Any
+
+from sympy import And, Eq, Expr, Ge, Gt, Le, Lt, Ne, Or, S
+from sympy.core.relational import Relational
+from sympy.logic.boolalg import Boolean
+
+from .facts import Facts, real_part
+from .form import ONE, Form, add_to, expression, product, scaled
+from .judge import Judge
+from .linear import System, integral
+from .reduce import divided, split, strict
+from .relation import Known, merged, relation_of, row_key, sides
+from .signs import NEGATIVE, NOT_REAL, POSITIVE, ZERO, negated
+
+_INFINITIES = (S.Infinity, S.NegativeInfinity)
+_FALSE: Known = ({ONE: -1}, True)
+_MOST_INEQUALITIES = 3000
+_PRUNE_ABOVE = 8
+
+
+class Region(Judge):
+    """A conjunction of polynomial inequalities and other Booleans, over what the facts say. Immutable.
+
+    Parameters
+    ==========
+
+    facts : Facts, optional
+
+    Examples
+    ========
+
+    >>> from sympy import symbols
+    >>> from sympy_mellin_ext.region import Region
+    >>> c = symbols('c', positive=True)
+    >>> s, k, nu = symbols('s k nu', real=True)
+    >>> Region().positive(s, s + 1, 1 - s, c).to_boolean()
+    (s > 0) & (s < 1)
+    >>> Region().positive(1 + k/c).to_boolean()
+    k > -c
+    >>> Region().positive(s - nu, s + nu).to_boolean()
+    s > Abs(nu)
+    >>> Region().positive(s, -1 - s).empty
+    True
+    """
+
+    __slots__ = ("_boolean", "_empty", "_others", "_rows", "_system", "facts")
+
+    def __init__(self, facts: Facts | None = None) -> None:
+        self.facts = Facts() if facts is None else facts
+        self._rows: tuple[Known, ...] = ()
+        self._others: tuple[Boolean, ...] = ()
+        self._system: System | None = None
+        self._empty: bool | None = None
+        self._boolean: Boolean | None = None
+
+    def __repr__(self) -> str:
+        return f"Region({self.to_boolean()})"
+
+    def _with(self, rows: Iterable[Known] = (), others: Iterable[Boolean] = ()) -> Region:
+        new = Region(self.facts)
+        kept = list(self._rows)
+        kept.extend(row for row in rows if row not in kept)
+        new._rows = tuple(kept)
+        conditions = list(self._others)
+        conditions.extend(other for other in others if other not in conditions)
+        new._others = tuple(conditions)
+        return new
+
+    # -- building --------------------------------------------------------------------------------------------------
+
+    def positive(self, *exprs: Expr) -> Region:
+        """The part of the region where every expression is > 0.
+
+        Parameters
+        ==========
+
+        exprs : real expressions; ``oo`` and ``-oo`` stand for open and for impossible bounds
+
+        Raises
+        ======
+
+        ValueError
+            for an undefined expression (nan, zoo).
+        """
+        rows: list[Known] = []
+        others: list[Boolean] = []
+        for expr in exprs:
+            self._restrict(S(expr), True, rows, others)
+        return self._with(rows, others)
+
+    def holds(self, *booleans: Boolean) -> Region:
+        """The part of the region where the conditions hold."""
+        region = self
+        for boolean in booleans:
+            rows: list[Known] = []
+            others: list[Boolean] = []
+            self._require(S(boolean), rows, others)
+            region = region._with(rows, others)
+        return region
+
+    def meet(self, other: Region) -> Region:
+        """The intersection with another region of the same facts."""
+        return self._with(other._rows, other._others)
+
+    def _require(self, boolean: Boolean, rows: list[Known], others: list[Boolean]) -> None:
+        if isinstance(boolean, And):
+            for part in boolean.args:
+                self._require(part, rows, others)
+        elif boolean is S.false:
+            rows.append(_FALSE)
+        elif isinstance(boolean, (Gt, Lt, Ge, Le)):
+            self._restrict(boolean.gts - boolean.lts, isinstance(boolean, (Gt, Lt)), rows, others)
+        elif boolean is not S.true:
+            others.append(boolean)
+
+    def _restrict(self, expr: Expr, strictly: bool, rows: list[Known], others: list[Boolean]) -> None:
+        """expr > 0, or expr >= 0."""
+        facts = self.facts
+        infinite = [term for term in (expr.args if expr.is_Add else (expr,)) if term in _INFINITIES]
+        if expr in (S.NaN, S.ComplexInfinity) or len(set(infinite)) == 2:
+            raise ValueError(f"{expr} has no sign")
+        if infinite:
+            if infinite[0] is S.NegativeInfinity:
+                rows.append(_FALSE)
+            return
+        sign = 1
+        if expr.is_Mul:
+            unknown: list[Expr] = []
+            for factor in expr.args:
+                mask = facts.mask(factor)
+                if mask == NEGATIVE:
+                    sign = -sign
+                elif mask != POSITIVE:
+                    unknown.append(factor)
+            expr = unknown[0] if len(unknown) == 1 else expr.func(*unknown)
+        if strictly and expr.is_Pow and expr.exp.is_Integer and expr.exp.is_even and facts.real(expr.base):
+            if sign < 0:
+                rows.append(_FALSE)
+            elif not facts.nonzero(expr.base):
+                others.append(Ne(expr.base, 0, evaluate=False))
+            return
+        form = facts.form(expr)
+        if sign < 0:
+            form = scaled(form, -1)
+        for piece in split(form, facts):
+            nonzero: list[Expr] = []
+            if strictly:
+                piece, nonzero = strict(piece, facts)
+            else:
+                piece = divided(piece, facts)
+            mask = facts.form_mask(piece)
+            if not mask & (NOT_REAL | ZERO | POSITIVE) or (mask == ZERO and strictly):
+                rows.append(_FALSE)
+            elif mask & (NEGATIVE | NOT_REAL) or (mask & ZERO and strictly):
+                rows.append((piece, strictly))
+            others.extend(Ne(atom, 0, evaluate=False) for atom in nonzero)
+
+    # -- asking ----------------------------------------------------------------------------------------------------
+
+    @property
+    def empty(self) -> bool:
+        """Whether the conditions provably contradict each other, or the facts."""
+        if self._empty is None:
+            self._empty = (
+                _FALSE in self._rows
+                or bool(self._rows and not self._together().consistent())
+                or any(self.implies(other) is False for other in self._others)
+            )
+        return self._empty
+
+    def mask(self, expr: Expr) -> int:
+        """Which signs an expression can have in the region (see ``signs``)."""
+        return self._form_mask(self.facts.form(expr)) & self.facts.mask(expr)
+
+    def nonzero(self, expr: Expr) -> bool | None:
+        """Whether expr != 0, real or not; None where it is not known."""
+        answer = super().nonzero(expr)
+        if answer is None:
+            answer = self.facts.nonzero(expr)
+        if answer is None and not self.facts.real(expr) and super().nonzero(real_part(expr, self.facts)):
+            return True
+        return answer
+
+    def _form_mask(self, form: Form) -> int:
+        form = divided(form, self.facts)
+        mask = self.facts.form_mask(form)
+        if mask & NOT_REAL or mask in (POSITIVE, NEGATIVE, ZERO) or not self._rows:
+            return mask
+        system = self.facts.system([form], self._all_rows())
+        for sign, other in ((1, NEGATIVE), (-1, POSITIVE)):
+            if system.proves(scaled(form, sign), True):
+                return negated(other)
+            if system.proves(scaled(form, sign), False):
+                mask &= ~other
+        return mask
+
+    def contains(self, point: Mapping[Expr, Any]) -> bool:
+        """Whether a point with numbers for all parameters lies in the region (a numeric check, for tests).
+
+        Examples
+        ========
+
+        >>> from sympy import symbols
+        >>> s, nu = symbols('s nu', real=True)
+        >>> region = Region().positive(s - nu, s + nu)
+        >>> region.contains({s: 2, nu: -1}), region.contains({s: 1, nu: -2})
+        (True, False)
+        """
+        for form, strictly in self._rows:
+            value = expression(form).subs(point).evalf()
+            if not (value > 0 or (value == 0 and not strictly)):
+                return False
+        return all(other.subs(point) == S.true for other in self._others)
+
+    def _all_rows(self) -> list[Known]:
+        rows = list(self._rows)
+        for other in self._others:
+            if isinstance(other, Eq):
+                form = self.facts.form(other.lhs - other.rhs)
+                if not self.facts.form_mask(form) & NOT_REAL:
+                    rows += [(form, False), (scaled(form, -1), False)]
+        return rows
+
+    def _together(self) -> System:
+        if self._system is None:
+            self._system = self.facts.system((), self._all_rows())
+        return self._system
+
+    # -- the Boolean -------------------------------------------------------------------------------------------------
+
+    def to_boolean(self) -> Boolean:
+        """The region as a SymPy Boolean: the fewest inequalities, without what the facts already say.
+
+        Examples
+        ========
+
+        >>> from sympy import symbols
+        >>> a, b = symbols('a b', positive=True)
+        >>> s = symbols('s', real=True)
+        >>> Region(Facts([a < b])).positive(s, a - s, b - s, a + b).to_boolean()
+        (s > 0) & (s < a)
+        """
+        if self._boolean is None:
+            self._boolean = self._booleans()
+        return self._boolean
+
+    def _booleans(self) -> Boolean:
+        if self.empty:
+            return S.false
+        rows = _irredundant(self._rows, self.facts, self._all_rows()[len(self._rows) :])
+        relations: list[Boolean] = [
+            relation_of(row, self.facts) for row in sorted(merged(rows, self.facts), key=row_key)
+        ]
+        for other in self._others:
+            relations.extend(self._remaining(other))
+        return relations[0] if len(relations) == 1 else And(*relations)
+
+    def _remaining(self, other: Boolean) -> list[Boolean]:
+        """What is left of a condition that the inequalities may decide in part."""
+        answer = self.facts.implies(other) if isinstance(other, Eq) else self.implies(other)
+        if answer:
+            return []
+        if isinstance(other, Or):
+            return [Or(*[part for part in other.args if self.implies(part) is not False])]
+        if isinstance(other, Ne):
+            form = divided(self.facts.form(other.lhs - other.rhs), self.facts)
+            return [Ne(*sides(integral(form), self.facts)[:2], evaluate=False)]
+        return [other]
+
+
+def _irredundant(rows: Sequence[Known], facts: Facts, context: Sequence[Known] = ()) -> list[Known]:
+    """The rows that do not follow from the others; where there is a choice the simpler ones stay."""
+    kept = sorted(rows, key=row_key)
+    if not kept:
+        return kept
+    system = facts.system((), [*kept, *context])
+    dropped: set[int] = set()
+    for position in reversed(range(len(kept))):
+        if system.proves(*kept[position], without={*dropped, position}):
+            dropped.add(position)
+    return [row for position, row in enumerate(kept) if position not in dropped]
+
+
+def project(inequalities: Iterable[Expr | Relational], eliminate: Iterable[Expr], facts: Facts) -> list[Expr]:
+    """The shadow of a region: what linear strict inequalities say once some atoms are eliminated (Fourier-Motzkin).
+
+    Parameters
+    ==========
+
+    inequalities : expressions, each meant to be > 0, or strict relations
+    eliminate : the atoms to eliminate, in which the inequalities are linear with coefficients of known sign
+    facts : Facts
+
+    Returns
+    =======
+
+    list of Expr
+        Expressions without those atoms. All of them are > 0 iff there are values of the atoms for which the given ones
+        are. None is redundant; a system that cannot hold gives ``[-1]``.
+
+    Raises
+    ======
+
+    ValueError
+        if an atom occurs not linearly, if the sign of its coefficient is not known, or if there are too many
+        inequalities.
+
+    Notes
+    =====
+
+    Schrijver, *Theory of Linear and Integer Programming*, 12.2.
+
+    Examples
+    ========
+
+    >>> from sympy import symbols
+    >>> from sympy_mellin_ext.region import Facts, project
+    >>> s, c, a = symbols('s c a', real=True)
+    >>> project([c, s - c, a - s + c, 1 - c], [c], Facts())
+    [a, s, a - s + 1]
+    """
+    rows: list[Known] = []
+    for inequality in inequalities:
+        if isinstance(inequality, Relational):
+            if not isinstance(inequality, (Gt, Lt)):
+                raise ValueError(f"not a strict inequality: {inequality}")
+            inequality = inequality.gts - inequality.lts
+        rows.extend((strict(piece, facts)[0], True) for piece in split(facts.form(S(inequality)), facts))
+    pending = list(eliminate)
+    while pending:
+        # The atom that leaves the fewest inequalities goes first.
+        sides = {atom: _sides(rows, atom, facts) for atom in pending}
+        atom = min(
+            pending,
+            key=lambda one: len(sides[one][0]) * len(sides[one][1]) - len(sides[one][0]) - len(sides[one][1]),
+        )
+        pending.remove(atom)
+        above, below, rows = sides[atom]
+        if len(above) * len(below) + len(rows) > _MOST_INEQUALITIES:
+            raise ValueError(f"too many inequalities in the elimination of {atom}")
+        for slope, rest in above:
+            for other_slope, other_rest in below:
+                form = product(slope, other_rest)
+                add_to(form, product(other_slope, rest))
+                row = (strict(form, facts)[0], True) if form else _FALSE
+                if row not in rows:
+                    rows.append(row)
+        if len(rows) > _PRUNE_ABOVE:
+            rows = _pruned(rows, facts)
+    return [expression(form) for form, _ in _pruned(rows, facts)]
+
+
+def _pruned(rows: list[Known], facts: Facts) -> list[Known]:
+    if _FALSE in rows or not facts.system((), rows).consistent():
+        return [_FALSE]
+    return _irredundant(rows, facts)
+
+
+def _sides(
+    rows: list[Known], atom: Expr, facts: Facts
+) -> tuple[list[tuple[Form, Form]], list[tuple[Form, Form]], list[Known]]:
+    """Rows slope*atom + rest > 0 and -slope*atom + rest > 0, as pairs with slope > 0; and the rows without the atom."""
+    above: list[tuple[Form, Form]] = []
+    below: list[tuple[Form, Form]] = []
+    free: list[Known] = []
+    for row in rows:
+        slope: Form = {}
+        rest: Form = {}
+        for key, value in row[0].items():
+            exponents = dict(key)
+            exponent = exponents.pop(atom, 0)
+            if exponent not in (0, 1) or any(other.has(atom) for other in exponents):
+                raise ValueError(f"not linear in {atom}: {expression(row[0])}")
+            (slope if exponent else rest)[tuple(exponents.items())] = value
+        if not slope:
+            free.append(row)
+            continue
+        mask = facts.form_mask(slope)
+        if mask not in (POSITIVE, NEGATIVE):
+            raise ValueError(f"the coefficient of {atom} has no known sign: {expression(slope)}")
+        if mask == POSITIVE:
+            above.append((slope, rest))
+        else:
+            below.append((scaled(slope, -1), rest))
+    return above, below, free
