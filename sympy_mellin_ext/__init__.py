@@ -1,0 +1,8 @@
+"""Closed forms, with their exact parameter regions, for half-line integrals in SymPy."""
+from .closed_form import ClosedForm
+from .integrate import closed_form, integrate, mellin
+from .problem import Refusal
+
+__version__ = "0.1.0"
+
+__all__ = ["ClosedForm", "Refusal", "closed_form", "integrate", "mellin"]

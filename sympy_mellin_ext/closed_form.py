@@ -1,0 +1,123 @@
+"""The answer: a value, the region where it holds, and how it was found."""
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass, field, replace
+from typing import TYPE_CHECKING, Any
+
+from sympy import Expr, Integral, Piecewise, S, Symbol, latex
+from sympy.logic.boolalg import Boolean
+
+if TYPE_CHECKING:
+    from .verify import Verification
+
+
+@dataclass(frozen=True)
+class Step:
+    """One step of the derivation: what was done, by which theorem, to what result."""
+
+    action: str
+    theorem: str = ""
+    result: Expr | Boolean | None = None
+
+    def __str__(self) -> str:
+        theorem = f" [{self.theorem}]" if self.theorem else ""
+        result = f": {self.result}" if self.result is not None else ""
+        return f"{self.action}{theorem}{result}"
+
+
+@dataclass(frozen=True)
+class ClosedForm:
+    """A closed form with its exact region.
+
+    Attributes
+    ----------
+    value : Expr
+        The closed form.
+    condition : Boolean
+        The region of convergence in the parameters; removable singularities of ``value`` are inside.
+    strip : tuple of two Expr, or None
+        Fundamental strip ``lower < Re s < upper`` of the transform that was used.
+    strategy : str
+        Name of the strategy.
+    steps : tuple of Step
+    sources : tuple of str
+        Published sources of the formulas used.
+    special : tuple of (Boolean, Expr)
+        Values where ``value`` is undefined inside the region (0*oo, oo - oo), by Laurent expansion.
+    integrand, limits :
+        The integral that this answers.
+
+    Examples
+    --------
+    >>> from sympy import Symbol, exp, oo, symbols
+    >>> from sympy_mellin_ext import closed_form
+    >>> x = Symbol('x', positive=True)
+    >>> s, a = symbols('s a', real=True)
+    >>> answer = closed_form(x**(s - 1)*exp(-a*x), (x, 0, oo))
+    >>> answer.value
+    gamma(s)/a**s
+    >>> answer.condition
+    (a > 0) & (s > 0)
+    """
+
+    value: Expr
+    condition: Boolean = S.true
+    strip: tuple[Expr, Expr] | None = None
+    strategy: str = ""
+    steps: tuple[Step, ...] = ()
+    sources: tuple[str, ...] = ()
+    special: tuple[tuple[Boolean, Expr], ...] = ()
+    integrand: Expr = S.Zero
+    limits: tuple[tuple[Symbol, Expr, Expr], ...] = ()
+    given: tuple[Any, ...] = field(default=(), repr=False)
+
+    def as_piecewise(self) -> Expr:
+        """The bare value where the assumptions imply the region, else a Piecewise that ends in the Integral.
+
+        Values at removable singularities stand first, on an ``Eq`` branch.
+        """
+        branches = [(value, where) for where, value in self.special]
+        if self.condition is S.true:
+            if not branches:
+                return self.value
+            return Piecewise(*branches, (self.value, True))
+        return Piecewise(*branches, (self.value, self.condition), (self.integral, True))
+
+    @property
+    def integral(self) -> Integral:
+        """The unevaluated integral that this answers."""
+        return Integral(self.integrand, *self.limits)
+
+    def verify(
+        self, digits: int = 15, points: Sequence[Mapping[Symbol | str, Any]] | None = None
+    ) -> Verification:
+        """Compare with numerical quadrature at points inside the region; see :func:`verify`."""
+        from .verify import verify
+
+        if len(self.limits) != 1:
+            raise ValueError("verify takes an integral over one variable, not " + str(self.limits))
+        return verify(
+            self.integrand, self.limits[0], self._general(), condition=self.condition, digits=digits,
+            points=points, given=self.given,
+        )  # fmt: skip
+
+    def _general(self) -> Expr:
+        branches = [(value, where) for where, value in self.special]
+        return Piecewise(*branches, (self.value, True)) if branches else self.value
+
+    def times(self, constant: Expr) -> ClosedForm:
+        """The closed form of ``constant`` times the integral."""
+        return replace(
+            self,
+            value=constant * self.value,
+            special=tuple((where, constant * value) for where, value in self.special),
+        )
+
+    def __str__(self) -> str:
+        region = "" if self.condition is S.true else f"  for {self.condition}"
+        return f"{self.value}{region}  [{self.strategy}]"
+
+    def _repr_latex_(self) -> str:
+        region = "" if self.condition is S.true else r",\quad " + latex(self.condition)
+        return rf"$\displaystyle {latex(self.integral)} = {latex(self.value)}{region}$"

@@ -1,0 +1,207 @@
+"""The public calls: a drop-in ``integrate``, ``closed_form`` without a fallback, and the transform itself."""
+from __future__ import annotations
+
+from collections.abc import Iterable
+from dataclasses import replace
+from typing import Any
+
+import sympy
+from sympy import Expr, Symbol, Tuple, sympify
+from sympy.core.relational import Relational
+from sympy.logic.boolalg import Boolean, BooleanAtom
+
+from .closed_form import ClosedForm
+from .problem import Diagnosis, Problem, Refusal
+from .region import Facts
+from .strategies import attempt
+
+# Any of these, forced by the caller, asks for one of SymPy's own methods.
+_STOCK_METHODS = ("meijerg", "risch", "heurisch", "manual")
+
+Given = Boolean | Iterable[Boolean]
+
+
+def integrate(f: Any, *limits: Any, given: Given = (), **hints: Any) -> Any:
+    """Drop-in for :func:`sympy.integrate` that tries the master theorem first.
+
+    Parameters
+    ----------
+    f, *limits, **hints :
+        As for SymPy: ``conds='piecewise'|'separate'|'none'``, ``meijerg``, ``risch``, ``heurisch``,
+        ``manual``.  A forced method goes to SymPy unchanged, and so does all that is not ours.
+    given : relation or iterable of relations
+        What the parameters are known to satisfy, such as ``a > b``; never passed on.
+
+    Returns
+    -------
+    Expr
+        The bare closed form where the assumptions imply the region, else
+        ``Piecewise((value, region), (Integral(...), True))``.  With ``conds='none'`` the value alone, with
+        ``conds='separate'`` the pair (value, region).
+
+    Examples
+    --------
+    >>> from sympy import Symbol, besselj, oo, symbols
+    >>> from sympy_mellin_ext import integrate
+    >>> x, a = symbols('x a', positive=True)
+    >>> integrate(1/(x**2 + a**2)**3, (x, 0, oo))
+    3*pi/(16*a**5)
+    """
+    if len(limits) == 1 and not any(hints.get(name) for name in _STOCK_METHODS):
+        conds = hints.get("conds", "piecewise")
+        if conds in ("piecewise", "separate", "none") and _only_known(hints):
+            answer = _answer(f, limits, given)
+            if answer is not None:
+                if conds == "piecewise":
+                    return answer.as_piecewise()
+                if conds == "none":
+                    return answer.value
+                return answer.value, answer.condition
+    return sympy.integrate(f, *limits, **hints)
+
+
+def _only_known(hints: dict[str, Any]) -> bool:
+    return all(name == "conds" or name in _STOCK_METHODS for name in hints)
+
+
+def _answer(f: Any, limits: tuple[Any, ...], given: Given) -> ClosedForm | None:
+    """Our closed form, or None; what is malformed is left to SymPy, which raises its own exceptions."""
+    integral = _read(f, limits)
+    if integral is None:
+        return None
+    facts = Facts(_relations(given))
+    return _solve(*integral, facts, None)
+
+
+def _read(f: Any, limits: tuple[Any, ...]) -> tuple[Expr, Symbol, Expr, Expr] | None:
+    limit = limits[0]
+    if not isinstance(limit, (tuple, list, Tuple)) or len(limit) != 3:
+        return None
+    if not isinstance(f, Expr) or not isinstance(limit[0], Symbol):
+        return None
+    lower, upper = limit[1], limit[2]
+    if isinstance(lower, str) or isinstance(upper, str):
+        return None
+    lower, upper = sympify(lower), sympify(upper)
+    if not isinstance(lower, Expr) or not isinstance(upper, Expr):
+        return None
+    if not f.is_commutative or not f.has_free(limit[0]):
+        return None
+    return f, limit[0], lower, upper
+
+
+def _solve(
+    f: Expr, x: Symbol, lower: Expr, upper: Expr, facts: Facts, diagnosis: Diagnosis | None, reference: Expr | None = None
+) -> ClosedForm | None:
+    answer = attempt(Problem(f, x, lower, upper, facts, diagnosis, 0, reference))
+    if answer is None:
+        return None
+    return replace(answer, integrand=f, limits=((x, lower, upper),), given=facts.given)
+
+
+def _relations(given: Given) -> tuple[Boolean, ...]:
+    items = (given,) if isinstance(given, (Boolean, bool)) else tuple(given)
+    for item in items:
+        if not isinstance(item, (Relational, Boolean, BooleanAtom, bool)):
+            raise TypeError(f"given takes a relation such as a > b or a list of them, not {item!r}")
+    return tuple(sympify(item) for item in items)
+
+
+def closed_form(f: Any, *limits: Any, given: Given = (), strict: bool = False) -> ClosedForm | None:
+    """The closed form of a definite integral with its region, or None; SymPy is not asked.
+
+    Parameters
+    ----------
+    f : Expr
+        The integrand.
+    *limits : tuple (x, lower, upper)
+    given : relation or iterable of relations
+        What the parameters are known to satisfy.
+    strict : bool
+        Raise :class:`Refusal`, which says why, instead of returning None.
+
+    Raises
+    ------
+    TypeError, ValueError
+        If an argument is not of the form above.
+    Refusal
+        Under ``strict``.
+
+    Examples
+    --------
+    >>> from sympy import exp, oo, symbols
+    >>> from sympy_mellin_ext import Refusal, closed_form
+    >>> x, a = symbols('x a', positive=True)
+    >>> print(closed_form(x**2*exp(-a*x), (x, 0, oo)))
+    2/a**3  [master theorem]
+    >>> try:
+    ...     closed_form(exp(-x)/x**2, (x, 0, oo), strict=True)
+    ... except Refusal as refusal:
+    ...     print(refusal.reason)
+    diverges
+    """
+    f = _expression(f, "f")
+    if len(limits) != 1:
+        raise ValueError(f"limits must be one tuple (x, lower, upper), not {len(limits)} arguments")
+    integral = _read(f, limits)
+    if integral is None:
+        if not f.free_symbols and isinstance(limits[0], (tuple, list, Tuple)) and len(limits[0]) == 3:
+            return _refused(Refusal("no kernel", "the integrand has no variable"), strict)
+        if isinstance(limits[0], (tuple, list, Tuple)) and len(limits[0]) == 3 and isinstance(limits[0][0], Symbol):
+            return _refused(Refusal("no kernel", f"the integrand does not depend on {limits[0][0]}"), strict)
+        raise ValueError(f"limits must be a tuple (x, lower, upper) with a Symbol x, not {limits[0]!r}")
+    diagnosis = Diagnosis() if strict else None
+    answer = _solve(*integral, Facts(_relations(given)), diagnosis)
+    if answer is None and diagnosis is not None:
+        raise diagnosis.refusal()
+    return answer
+
+
+def _refused(refusal: Refusal, strict: bool) -> None:
+    if strict:
+        raise refusal
+
+
+def _expression(f: Any, name: str) -> Expr:
+    if isinstance(f, str):
+        raise TypeError(f"{name} must be a SymPy expression, not the string {f!r}")
+    f = sympify(f)
+    if not isinstance(f, Expr):
+        raise TypeError(f"{name} must be a SymPy expression, not {type(f).__name__}")
+    return f
+
+
+def mellin(f: Any, x: Symbol, s: Symbol, given: Given = (), strict: bool = False) -> ClosedForm | None:
+    """Mellin transform ``int_0^oo x**(s-1) f(x) dx`` with its fundamental strip, or None.
+
+    Parameters
+    ----------
+    f : Expr
+    x, s : Symbol
+        ``s`` needs no assumptions: it is complex.
+    given, strict :
+        As for :func:`closed_form`.
+
+    Examples
+    --------
+    >>> from sympy import Symbol, sin, symbols
+    >>> from sympy_mellin_ext import mellin
+    >>> x, s = symbols('x s')
+    >>> answer = mellin(sin(x), x, s)
+    >>> answer.value
+    2**(s - 1)*sqrt(pi)*gamma(s/2 + 1/2)/gamma(1 - s/2)
+    >>> answer.strip
+    (-1, 1)
+    """
+    f = _expression(f, "f")
+    for symbol, name in ((x, "x"), (s, "s")):
+        if not isinstance(symbol, Symbol):
+            raise TypeError(f"{name} must be a Symbol, not {symbol!r}")
+    if x == s or f.has_free(s):
+        raise ValueError(f"s = {s} must differ from the variable and must not occur in f")
+    diagnosis = Diagnosis() if strict else None
+    integrand = x ** (s - 1) * f
+    answer = _solve(integrand, x, sympy.S.Zero, sympy.oo, Facts(_relations(given)), diagnosis, s - 1)
+    if answer is None and diagnosis is not None:
+        raise diagnosis.refusal()
+    return answer

@@ -1,0 +1,202 @@
+"""A piece of an integral: one term whose Mellin transform is known, and its exact behaviour at both ends."""
+from __future__ import annotations
+
+from collections.abc import Iterator
+from dataclasses import dataclass
+from typing import NamedTuple, Protocol
+
+from sympy import Abs, Expr, I, Mul, S, cos, exp, factorial, pi
+from sympy.logic.boolalg import Boolean
+
+from .gamma import GammaProduct
+from .gamma.laurent import Series, cosine_series, exponential, multiply
+from .matching import Term, Wave
+from .region import real_part
+
+
+class DirichletFactor(Protocol):
+    """A factor of a transform with isolated poles: zeta, Hurwitz, Lerch, polylog in ``slope*u + shift``."""
+
+    def at(self, u: Expr) -> Expr:
+        """The value at ``u``."""
+
+    def laurent(self, u: Expr, rate: Expr, terms: int) -> Series:
+        """Series of the factor at ``u + rate*eps``."""
+
+    def poles(self) -> tuple[Expr, ...]:
+        """Its poles in ``u``; they lie left of the strip."""
+
+
+@dataclass(frozen=True)
+class Piece:
+    """``constant * x**power * log(x)**logs * g(x**ratio)`` with the transform of ``g`` given.
+
+    A pure power has ``product`` None: its transform vanishes (in the regularised sense), but its
+    behaviour at both ends counts.
+    """
+
+    constant: Expr
+    power: Expr
+    logs: int = 0
+    product: GammaProduct | None = None
+    ratio: Expr = S.One
+    wave: Wave | None = None
+    dirichlet: tuple[DirichletFactor, ...] = ()
+    condition: Boolean = S.true
+    inside: bool = True
+
+    @classmethod
+    def of_term(cls, term: Term) -> Piece:
+        """From a term with at most one kernel."""
+        if not term.kernels:
+            return cls(term.coefficient, term.power, term.logs)
+        (k,) = term.kernels
+        return cls(
+            term.coefficient, term.power, term.logs, k.product, k.ratio, k.wave, (), k.condition, k.inside
+        )
+
+    @property
+    def u(self) -> Expr:
+        """The point at which the transform of ``g`` is needed."""
+        return (self.power + 1) / self.ratio
+
+    def subs(self, *replacement: Expr) -> Piece:
+        """The piece with a parameter replaced in its constant and exponents."""
+        old, new = replacement
+        return Piece(
+            self.constant.subs(old, new), self.power.subs(old, new), self.logs, self.product, self.ratio.subs(old, new),
+            self.wave, self.dirichlet, self.condition, self.inside,
+        )  # fmt: skip
+
+    # -- value -----------------------------------------------------------------------------------------
+
+    def value(self) -> Expr:
+        """The finite part of the transform at ``eps = 0`` with the logarithms as derivatives."""
+        product = self.product
+        if product is None:
+            return S.Zero
+        u = self.u
+        if not u.is_Atom:
+            u = u.expand() if u.is_Mul else u
+        front = self.constant if self.ratio is S.One else self.constant / _modulus(self.ratio)
+        if self.logs == 0 and self.pole_order(u) <= 0:
+            factors = [front, product.at(u)]
+            if self.wave is not None:
+                factors.append(_wave_value(self.wave, u))
+            factors.extend(d.at(u) for d in self.dirichlet)
+            return Mul(*factors)
+        series = self.series(u, self.logs + self.pole_order(u) + 1)
+        return front * factorial(self.logs) * series.coefficient(self.logs)
+
+    def pole_order(self, u: Expr) -> int:
+        """Order of the pole that the Gammas and the Dirichlet series make at ``u``; zeros do not count."""
+        assert self.product is not None
+        order = max(self.product.order_at(u), 0)
+        if self.dirichlet:
+            order += sum(1 for d in self.dirichlet for p in d.poles() if (p - u).expand().is_zero)
+        return order
+
+    def series(self, u: Expr, terms: int) -> Series:
+        """Laurent series of the transform at ``u + eps/ratio``, without the constant."""
+        assert self.product is not None
+        rate = 1 / self.ratio
+        series = self.product.laurent(u, terms, rate)
+        if self.wave is not None:
+            series = multiply(series, _wave_series(self.wave, u, rate, terms), terms)
+        for d in self.dirichlet:
+            series = multiply(series, d.laurent(u, rate, terms), terms)
+        return series
+
+    # -- behaviour at 0 and oo -------------------------------------------------------------------------
+
+    def rungs(self, end: int) -> list[Iterator[Expr]]:
+        """Ladders of exponents of x in the expansion at 0 (``end=+1``) or at oo (``end=-1``)."""
+        if self.product is None:
+            return [iter([self.power])]
+        side = end if self.ratio.is_positive else -end
+        starts = [(l.start, l.step) for l in self.product.ladders(side)]
+        ladders = [self._climb(start, step) for start, step in starts]
+        if side > 0:
+            ladders += [iter([self._exponent(p)]) for d in self.dirichlet for p in d.poles()]
+        return ladders
+
+    def _climb(self, start: Expr, step: Expr) -> Iterator[Expr]:
+        n = 0
+        while True:
+            yield self._exponent(start - n * step)
+            n += 1
+
+    def _exponent(self, pole: Expr) -> Expr:
+        return (self.power - self.ratio * pole).expand()
+
+    def coefficients(self, exponent: Expr, end: int) -> list[Expr]:
+        """Coefficients of ``x**exponent * log(x)**j``, j = 0, 1, ..., in the expansion at this end."""
+        if self.product is None:
+            return [S.Zero] * self.logs + [self.constant]
+        u = ((self.power - exponent) / self.ratio).expand()
+        order = self.pole_order(u)
+        if order == 0:
+            return []
+        series = self.series(u, order)  # in eps, u = u0 + eps/ratio
+        side = end if self.ratio.is_positive else -end
+        result = [S.Zero] * self.logs
+        for j in range(order):
+            # residue in u of G(u)*x**(-ratio*u): eps**(-j-1) meets (-eps*log x)**j / j!, du = deps/ratio
+            c = series.coefficient(-j - 1) * (-1) ** j / factorial(j) / self.ratio
+            result.append(self.constant * c * side)
+        return result
+
+    # -- growth ----------------------------------------------------------------------------------------
+
+    def growth(self) -> Growth | None:
+        """What the growth on vertical lines demands (design table); None: not a Mellin transform of g."""
+        if self.product is None:
+            return Growth()
+        lam, delta = self.product.lam, self.product.delta
+        angle = abs(self.wave.angle) if self.wave is not None else S.Zero
+        if self.inside and (self.wave is not None or lam > 0):
+            return Growth(self.condition) if lam > 0 else None
+        excess = angle - pi * lam / 2
+        if excess.is_negative:
+            return Growth(self.condition)
+        if not excess.is_zero:
+            return None
+        if delta == 0:
+            return Growth(self.condition, -self.product.kappa(S.Zero))
+        # kappa(sigma) < 1/2: an oscillating end, at oo for delta > 0 and ratio > 0
+        bound = (S.Half - self.product.kappa(S.Zero)) / delta
+        end = -1 if (delta > 0) == bool(self.ratio.is_positive) else 1
+        return Growth(self.condition, None, (end, real_part(self._exponent(bound))))
+
+
+class Growth(NamedTuple):
+    """Conditions from the growth: a Boolean, an expression to be positive, an end of conditional convergence.
+
+    ``conditional`` is (end, exponent): the oscillating part counts like ``x**exponent`` at that end.
+    """
+
+    condition: Boolean = S.true
+    positive: Expr | None = None
+    conditional: tuple[int, Expr] | None = None
+
+
+def _modulus(ratio: Expr) -> Expr:
+    return ratio if ratio.is_positive else -ratio if ratio.is_negative else Abs(ratio)
+
+
+def _wave_value(wave: Wave, u: Expr) -> Expr:
+    phase = (wave.angle * u).expand() + wave.phase
+    if wave.real:
+        return cos(phase)
+    return exp(-I * phase)
+
+
+def _wave_series(wave: Wave, u: Expr, rate: Expr, terms: int) -> Series:
+    phase = (wave.angle * u).expand() + wave.phase
+    if wave.real:
+        return cosine_series(phase, wave.angle * rate, terms)
+    step = -I * wave.angle * rate
+    return Series(0, exponential(exp(-I * phase), [step] + [S.Zero] * terms, terms))
+
+
+__all__ = ["DirichletFactor", "Piece"]

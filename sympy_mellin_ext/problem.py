@@ -1,0 +1,85 @@
+"""One integral to be done, and the refusal that says why it was not."""
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+
+from sympy import Expr, S, Symbol, oo
+
+from .region import Facts
+
+REASONS = ("no kernel", "growth", "empty region", "diverges", "range", "too many kernels")
+
+
+class Refusal(Exception):
+    """Why an integral was not done, raised under ``strict=True``.
+
+    Attributes
+    ----------
+    reason : str
+        One of 'no kernel', 'growth', 'empty region', 'diverges', 'range', 'too many kernels'.
+    detail : str
+        Which factor, which end.
+    """
+
+    def __init__(self, reason: str, detail: str) -> None:
+        super().__init__(f"{reason}: {detail}")
+        self.reason = reason
+        self.detail = detail
+
+    def __reduce__(self) -> tuple[type[Refusal], tuple[str, str]]:
+        return type(self), (self.reason, self.detail)
+
+
+class Diagnosis:
+    """Collects the reasons of the strategies that refused; exists only when somebody asked."""
+
+    def __init__(self) -> None:
+        self.findings: list[Refusal] = []
+
+    def refusal(self) -> Refusal:
+        """The most telling finding: a later strategy that got further outranks 'no kernel'."""
+        ranked = [f for f in self.findings if f.reason != "no kernel"] or self.findings
+        return ranked[0] if ranked else Refusal("no kernel", "no strategy recognises the integrand")
+
+
+@dataclass(frozen=True)
+class Problem:
+    """``int integrand d(variable)`` over (lower, upper), with what is known of the parameters.
+
+    Attributes
+    ----------
+    integrand : Expr
+    variable : Symbol
+        Counts as positive on the half line, whatever its own assumptions.
+    lower, upper : Expr
+    facts : Facts
+    diagnosis : Diagnosis or None
+        Where refusals leave their reasons; None (the rule) costs nothing.
+    depth : int
+        How many strategies have handed a changed problem on; bounded, so that none runs in circles.
+    reference : Expr or None
+        The exponent ``s - 1`` that counts as the variable of the transform when a strip is stated.
+    """
+
+    integrand: Expr
+    variable: Symbol
+    lower: Expr = S.Zero
+    upper: Expr = oo
+    facts: Facts = Facts()  # noqa: RUF009 - immutable
+    diagnosis: Diagnosis | None = None
+    depth: int = 0
+    reference: Expr | None = None
+
+    @property
+    def half_line(self) -> bool:
+        """Whether the range is (0, oo)."""
+        return self.lower is S.Zero and self.upper is S.Infinity
+
+    def refuse(self, reason: str, detail: str) -> None:
+        """Note why a strategy refuses; returns None so that it can be returned."""
+        if self.diagnosis is not None:
+            self.diagnosis.findings.append(Refusal(reason, detail))
+
+    def changed(self, integrand: Expr, lower: Expr = S.Zero, upper: Expr = oo) -> Problem:
+        """The same question about another integrand and range, one level deeper."""
+        return replace(self, integrand=integrand, lower=lower, upper=upper, depth=self.depth + 1)

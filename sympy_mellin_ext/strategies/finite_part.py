@@ -1,0 +1,141 @@
+"""Sums of pieces: the finite part of the total transform, and the exact place where the total converges.
+
+Each piece's transform, continued analytically, is its transform in the regularised sense (a pure power has
+transform 0).  The total converges iff no term of the total expansions at 0 and at oo spoils it; then the
+integral is the sum of the finite parts, since the poles cancel.
+
+Source: D. Zagier, The Mellin transform and related analytic techniques (2006), section 1.
+"""
+from __future__ import annotations
+
+from collections.abc import Iterator, Sequence
+from dataclasses import dataclass, field
+
+from sympy import Add, Expr, S
+
+from ..pieces import Piece
+from ..region import Facts, Region, real_part
+
+# So many rungs may cancel at one end before we give up looking for a survivor.
+_MOST_CANCELLED = 40
+
+
+@dataclass
+class Edge:
+    """What survives of the total expansion at one end, and the exponents at which everything cancels."""
+
+    survivors: list[Expr] = field(default_factory=list)
+    cancelled: list[Expr] = field(default_factory=list)
+
+
+@dataclass
+class _Pointer:
+    piece: int
+    ladder: Iterator[Expr]
+    exponent: Expr | None
+
+    def advance(self) -> None:
+        self.exponent = next(self.ladder, None)
+
+
+def edge(pieces: Sequence[Piece], end: int, facts: Facts) -> Edge | None:
+    """Expand the total at 0 (``end=+1``) or oo (``end=-1``) to its first surviving terms.
+
+    None if the number of cancelled terms exceeds all bounds.
+    """
+    pointers: list[_Pointer] = []
+    for i, piece in enumerate(pieces):
+        for ladder in piece.rungs(end):
+            pointer = _Pointer(i, ladder, None)
+            pointer.advance()
+            pointers.append(pointer)
+    result = Edge()
+    settled: dict[Expr, frozenset[int]] = {}
+    for _ in range(_MOST_CANCELLED * max(1, len(pieces))):
+        groups: dict[Expr, list[_Pointer]] = {}
+        for pointer in pointers:
+            if pointer.exponent is not None:
+                groups.setdefault(pointer.exponent, []).append(pointer)
+        moved = False
+        for exponent, group in groups.items():
+            members = frozenset(p.piece for p in group)
+            if settled.get(exponent) == members:
+                continue
+            if _survives(exponent, [pieces[i] for i in sorted(members)], end):
+                settled[exponent] = members
+                continue
+            settled.pop(exponent, None)
+            result.cancelled.append(exponent)
+            for pointer in group:
+                pointer.advance()
+            moved = True
+        if not moved:
+            result.survivors = list(groups)
+            return result
+    return None
+
+
+def _survives(exponent: Expr, pieces: list[Piece], end: int) -> bool:
+    if len(pieces) == 1 and pieces[0].wave is None and not pieces[0].dirichlet:
+        return True
+    totals: list[list[Expr]] = []
+    for piece in pieces:
+        for j, c in enumerate(piece.coefficients(exponent, end)):
+            while len(totals) <= j:
+                totals.append([])
+            totals[j].append(c)
+    return any(not _vanishes(Add(*column)) for column in totals)
+
+
+def _vanishes(total: Expr) -> bool:
+    """Exact zero test for the small expressions that coefficients are; False when it cannot be shown."""
+    if total is S.Zero:
+        return True
+    expanded = total.expand(func=True)
+    if expanded is S.Zero:
+        return True
+    if expanded.is_number:
+        return bool(expanded.equals(0))
+    if not expanded.is_Add:
+        return False
+    return expanded.together().as_numer_denom()[0].expand() is S.Zero
+
+
+def converge(pieces: Sequence[Piece], facts: Facts) -> tuple[Region, Edge, Edge] | str:
+    """The region where the integral over (0, oo) of the sum converges, or the reason why there is none."""
+    region = Region(facts)
+    conditional: dict[int, list[Expr]] = {1: [], -1: []}
+    for piece in pieces:
+        growth = piece.growth()
+        if growth is None:
+            return "growth"
+        if growth.condition is not S.true:
+            region = region.holds(growth.condition)
+        if growth.positive is not None:
+            region = region.positive(growth.positive)
+        if growth.conditional is not None:
+            end, exponent = growth.conditional
+            conditional[end].append(exponent)
+    edges = []
+    for end in (1, -1):
+        found = edge(pieces, end, facts)
+        if found is None:
+            return "diverges"
+        found.survivors += conditional[end]
+        for exponent in found.survivors:
+            region = region.positive(end * (real_part(exponent) + 1))
+        edges.append(found)
+    if region.empty:
+        return "diverges"
+    return region, edges[0], edges[1]
+
+
+def total_value(pieces: Sequence[Piece]) -> Expr:
+    """The sum of the finite parts."""
+    if len(pieces) == 1:
+        return pieces[0].value()
+    values = [piece.value() for piece in pieces]
+    total = Add(*values)
+    if any(piece.logs or piece.product is None or piece.pole_order(piece.u) for piece in pieces):
+        total = total.expand(log=False, power_base=False, power_exp=False, trig=False)
+    return total

@@ -1,0 +1,115 @@
+"""Index 0: every term has at most one kernel, so that its transform is a Gamma product at once.
+
+A single term is Ramanujan's master theorem itself; a sum is done by the finite parts of the total.
+
+Sources: G. H. Hardy, Ramanujan: Twelve Lectures (1940), ch. XI; design of the conditions: R. B. Paris and
+D. Kaminski, Asymptotics and Mellin-Barnes Integrals (2001), ch. 2-3.
+"""
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+from sympy import Eq, Expr, Max, Min, S, Symbol, oo
+from sympy.core.sorting import default_sort_key
+from sympy.logic.boolalg import Boolean
+
+from ..closed_form import ClosedForm, Step
+from ..matching import Term, read_terms
+from ..pieces import Piece
+from ..problem import Problem
+from ..region import Region, real_part
+from .finite_part import Edge, converge, total_value
+
+_SUM_SOURCE = "D. Zagier, The Mellin transform and related analytic techniques (2006), section 1"
+_THEOREM_SOURCE = "Hardy, Ramanujan: Twelve Lectures (1940), ch. XI"
+
+
+class MasterTheorem:
+    """Sums of powers, logarithms and one kernel each, on the half line."""
+
+    name = "master theorem"
+
+    def attempt(self, problem: Problem) -> ClosedForm | None:
+        if not problem.half_line:
+            return problem.refuse("range", f"({problem.lower}, {problem.upper}) is not the half line")
+        terms = read_terms(problem.integrand, problem.variable, problem.facts)
+        if terms is None:
+            return problem.refuse("no kernel", f"a factor of {problem.integrand} is not in the table")
+        if not terms:
+            return ClosedForm(S.Zero, strategy=self.name)
+        if any(len(t.kernels) > 1 for t in terms):
+            return problem.refuse("too many kernels", "a term has more than one kernel")
+        return closed_form_of_terms(problem, terms, self.name)
+
+
+def closed_form_of_terms(problem: Problem, terms: Sequence[Term], name: str) -> ClosedForm | None:
+    """The closed form of a sum of terms with at most one kernel each."""
+    sources = tuple(dict.fromkeys(k.source for t in terms for k in t.kernels if k.source))
+    steps = tuple(
+        Step(f"kernel {k.name}, transform in s", k.source, k.product.as_expr(Symbol("s")))
+        for t in terms
+        for k in t.kernels
+    )
+    return closed_form_of_pieces(problem, [Piece.of_term(t) for t in terms], name, sources, steps)
+
+
+def closed_form_of_pieces(
+    problem: Problem,
+    pieces: Sequence[Piece],
+    name: str,
+    sources: tuple[str, ...] = (),
+    steps: tuple[Step, ...] = (),
+) -> ClosedForm | None:
+    """The closed form of a sum of pieces, with region, strip and values at removable singularities."""
+    outcome = converge(pieces, problem.facts)
+    if isinstance(outcome, str):
+        return problem.refuse(outcome, "no exponent makes the integral converge at 0 and at oo")
+    region, at_zero, at_infinity = outcome
+    value = total_value(pieces)
+    if value.has(S.NaN, S.ComplexInfinity, S.Infinity, S.NegativeInfinity):
+        return problem.refuse("diverges", "the formula is not finite")
+    condition = region.to_boolean()
+    if condition is S.false:
+        return problem.refuse("empty region", "the conditions contradict one another")
+    several = len(pieces) > 1
+    return ClosedForm(
+        value,
+        condition,
+        _strip(at_zero, at_infinity, problem.reference or pieces[0].power),
+        name,
+        (*steps, Step("finite parts added" if several else "master theorem", _SUM_SOURCE if several else _THEOREM_SOURCE, value)),
+        (*sources, _SUM_SOURCE if several else _THEOREM_SOURCE),
+        _special_values(pieces, at_zero, at_infinity, region),
+    )
+
+
+def _strip(at_zero: Edge, at_infinity: Edge, reference: Expr) -> tuple[Expr, Expr]:
+    """Bounds of Re s for the transform of the integrand without ``x**reference``, ``reference = s - 1``."""
+    lower = [real_part(reference - e) for e in at_zero.survivors]
+    upper = [real_part(reference - e) for e in at_infinity.survivors]
+    return (Max(*lower) if lower else -oo), (Min(*upper) if upper else oo)
+
+
+def _special_values(
+    pieces: Sequence[Piece], at_zero: Edge, at_infinity: Edge, region: Region
+) -> tuple[tuple[Boolean, Expr], ...]:
+    """Values where poles of single pieces cancel inside the region: the formula reads oo - oo there."""
+    special: list[tuple[Boolean, Expr]] = []
+    for exponent in dict.fromkeys([*at_zero.cancelled, *at_infinity.cancelled]):
+        gap = exponent + 1
+        for symbol in sorted(gap.free_symbols, key=default_sort_key):
+            slope = gap.diff(symbol)
+            if slope.has(symbol) or slope.is_zero:
+                continue
+            point = (symbol - gap / slope).expand()
+            inside = region.to_boolean().subs(symbol, point)
+            if inside == False:  # noqa: E712 - SymPy Boolean
+                break
+            value = total_value([piece.subs(symbol, point) for piece in pieces])
+            if not value.has(S.NaN, S.ComplexInfinity):
+                special.append((Eq(symbol, point), value))
+            break
+    return tuple(special)
+
+
+STRATEGIES = (MasterTheorem(),)
