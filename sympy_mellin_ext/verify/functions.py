@@ -66,6 +66,14 @@ def _spherical(kind: str) -> Callable[[Number, Number], Number]:
     return value
 
 
+def _hankel(nu: Number, z: Number, sign: int) -> Number:
+    """Through K (DLMF 10.27.8), where J and Y would cancel: the half-plane in which the function decays."""
+    turn = mp.mpc(0, sign)
+    if mp.im(z) * sign >= 0 and mp.re(z) > 0:
+        return 2 / (mp.pi * turn) * mp.exp(-turn * nu * mp.pi / 2) * mp.besselk(nu, -turn * z)
+    return mp.besselj(nu, z) + turn * mp.bessely(nu, z)
+
+
 def _laguerre(n: Number, x: Number) -> Number:
     return mp.laguerre(n, 0, x)
 
@@ -134,6 +142,8 @@ TABLE: dict[str, Callable[..., Number]] = {
     "RisingFactorial": lambda x, n: mp.rf(x, n),
     "FallingFactorial": lambda x, n: mp.ff(x, n),
     "Heaviside": _heaviside,
+    "hankel1": lambda nu, z: _hankel(nu, z, 1),
+    "hankel2": lambda nu, z: _hankel(nu, z, -1),
     "airyaiprime": lambda z: mp.airyai(z, derivative=1),
     "airybiprime": lambda z: mp.airybi(z, derivative=1),
     "jn": _spherical("besselj"),
