@@ -181,7 +181,7 @@ def _absorb_linear(ups: list[Expr], downs: list[Expr], outside: list[Expr]) -> N
                 changed = False
                 for j, factor in enumerate(outside):
                     number, rest = factor.as_coeff_Mul()
-                    if number is S.NegativeOne:
+                    if number is S.NegativeOne and rest is not S.One:
                         outside[j : j + 1] = [number, rest]
                         changed = True
                         break
