@@ -1,8 +1,8 @@
 """Linear forms with monomials for coordinates: ``{monomial: rational coefficient}``.
 
-A monomial is a tuple of pairs (atom, exponent), sorted; the empty tuple is the number 1. An atom is a symbol, ``re(s)``,
-a function, an irrational number: whatever is not taken apart. Exponents are rational. Plain dictionaries of Python
-numbers are an order of magnitude faster than expressions that are built only to be compared.
+A monomial is a tuple of pairs (atom, exponent), sorted; the empty tuple is the number 1. An atom is a symbol,
+``re(s)``, a function, an irrational number: whatever is not taken apart. Exponents are rational. Dictionaries
+of Python numbers are an order of magnitude faster than expressions that are built only to be compared.
 """
 
 from collections.abc import Callable, Mapping
@@ -12,10 +12,11 @@ from functools import lru_cache
 from sympy import Add, Expr, Float, Integer, Mul, Pow
 from sympy import Rational as SymPyRational
 
-from .linear import Rational
+from .linear import Rational, integral
 
 Monomial = tuple[tuple[Expr, Rational], ...]
 Form = dict[Monomial, Rational]
+Known = tuple[Form, bool]  # form > 0 if the flag is true, else form >= 0
 Rewrite = Callable[[Expr], Expr | None]
 
 ONE: Monomial = ()
@@ -36,7 +37,7 @@ def to_sympy(value: Rational) -> SymPyRational:
 
 @lru_cache(maxsize=512)
 def atom_key(atom: Expr) -> tuple[int, str, int]:
-    """A key that sorts atoms the same way in every run: symbols and their real parts by name, then the others."""
+    """A key that sorts atoms the same way in every run: symbols and their real parts by name first."""
     if atom.is_Symbol:
         return (0, atom.name, getattr(atom, "dummy_index", 0))
     if len(atom.args) == 1 and atom.args[0].is_Symbol:
@@ -49,8 +50,13 @@ def monomial_key(monomial: Monomial) -> tuple[object, ...]:
     return (not monomial, len(monomial), [(atom_key(atom), exponent) for atom, exponent in monomial])
 
 
+def constant(key: Monomial) -> bool:
+    """Whether the monomial is a number."""
+    return all(not atom.is_Symbol and atom.is_number for atom, _ in key)
+
+
 def monomial(factors: Mapping[Expr, Rational]) -> tuple[Rational, Monomial]:
-    """A product of powers as (coefficient, monomial); of the powers of a number the coefficient takes what it can."""
+    """A product of powers as (coefficient, monomial); integer powers of numbers go into the coefficient."""
     coefficient: Rational = 1
     pairs: list[tuple[Expr, Rational]] = []
     for atom, exponent in factors.items():
@@ -92,6 +98,11 @@ def times(left: Monomial, right: Monomial) -> tuple[Rational, Monomial]:
     for atom, exponent in right:
         factors[atom] = factors.get(atom, 0) + exponent
     return monomial(factors)
+
+
+def primitive(form: Mapping[Monomial, Rational]) -> Form:
+    """The positive multiple with coprime integer coefficients."""
+    return {**integral(form)}
 
 
 def product(left: Mapping[Monomial, Rational], right: Mapping[Monomial, Rational]) -> Form:
@@ -141,23 +152,21 @@ def _power(expr: Pow, rewrite: Rewrite) -> Form:
     exponent = ratio(expr.exp.p, expr.exp.q)
     if len(base) == 1:
         ((key, value),) = base.items()
-        if type(exponent) is int or value == 1:
-            if type(exponent) is int or (len(key) == 1 and key[0][1] == 1):
-                coefficient, power = monomial({atom: e * exponent for atom, e in key})
-                return {
-                    power: _plain(coefficient * Fraction(value) ** exponent if value != 1 else coefficient)
-                }
-        elif not key and value > 0:
+        if isinstance(exponent, int):
+            coefficient, power = monomial({atom: e * exponent for atom, e in key})
+            return {power: _plain(coefficient * Fraction(value) ** exponent)}
+        if value == 1 and len(key) == 1 and key[0][1] == 1:
+            return {((key[0][0], exponent),): 1}
+        if not key and value > 0:
             coefficient, power = monomial({to_sympy(value): exponent})
             return {power: coefficient}
-    elif type(exponent) is int and 0 < exponent <= _LARGEST_POWER:
+    elif isinstance(exponent, int) and 0 < exponent <= _LARGEST_POWER:
         result = base
         for _ in range(exponent - 1):
             if len(result) * len(base) > _MOST_TERMS:
-                break
+                return {((expr.base, exponent),): 1}
             result = product(result, base)
-        else:
-            return result
+        return result
     return {((expr.base, exponent),): 1}
 
 

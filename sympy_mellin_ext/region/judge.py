@@ -103,3 +103,19 @@ def of_predicate(predicate: AppliedPredicate) -> Relational | None:
     """``Q.positive(a)`` as ``a > 0``."""
     relation = _PREDICATES.get(str(predicate.function.name))
     return None if relation is None else relation(predicate.arguments[0], 0, evaluate=False)
+
+
+def relations_of(element: Boolean) -> list[Relational]:
+    """The relations in a conjunction; ValueError for what is no statement at all."""
+    if isinstance(element, (bool, BooleanTrue, BooleanFalse)):
+        return [] if element else [Gt(0, 1, evaluate=False)]
+    if not isinstance(element, Boolean) or element.is_Symbol:
+        raise ValueError(f"given: {element!r} is not a SymPy relation, such as a > 0")
+    if isinstance(element, Not):
+        # Not of a relation is the opposite relation: SymPy has turned it round already unless told not to.
+        element = Not(element.args[0])
+    if isinstance(element, And):
+        return [relation for part in element.args for relation in relations_of(part)]
+    if isinstance(element, AppliedPredicate):
+        element = of_predicate(element)
+    return [element] if isinstance(element, Relational) else []

@@ -9,12 +9,14 @@ Whether one exists is decided by the simplex method with Bland's rule, in intege
 from collections.abc import Collection, Hashable, Iterable, Mapping
 from fractions import Fraction
 from math import gcd, lcm
+from typing import Generic, TypeVar
 
 Rational = int | Fraction
 Row = dict[int, int]
+Key = TypeVar("Key", bound=Hashable)
 
 
-def integral(row: Mapping[Hashable, Rational]) -> dict[Hashable, int]:
+def integral(row: Mapping[Key, Rational]) -> dict[Key, int]:
     """The positive multiple of a row that has coprime integer entries.
 
     Examples
@@ -72,8 +74,8 @@ def _vanishing_combination(rows: list[Row], strict: list[bool]) -> bool:
     keys = sorted({key for row in rows for key in row})
     table = [[row.get(key, 0) for row in rows] + [0] for key in keys]
     table.append([int(flag) for flag in strict] + [1])
-    # First phase: minimise the sum of the artificial variables, one an equation. They are numbered -1, -2, ...
-    # and never come back once they have left, so that no columns are kept for them.
+    # First phase: minimise the sum of the artificial variables, one an equation, numbered -1, -2, ... Once
+    # they have left they never come back, so that no columns are kept for them.
     basis = [-1 - i for i in range(len(table))]
     cost = [-sum(column) for column in zip(*table, strict=True)]
     scale = 1
@@ -103,14 +105,14 @@ def _vanishing_combination(rows: list[Row], strict: list[bool]) -> bool:
 
 
 def _eliminated(line: list[int], pivot_line: list[int], column: int, pivot: int, scale: int) -> list[int]:
-    """One row of an integer-preserving pivot (Edmonds 1967): every entry is a minor, so the division is exact."""
+    """One row of an integer-preserving pivot: every entry is a minor, so that the division is exact."""
     factor = line[column]
     if not factor:
         return line if pivot == scale else [x * pivot // scale for x in line]
     return [(x * pivot - factor * y) // scale for x, y in zip(line, pivot_line, strict=True)]
 
 
-class System:
+class System(Generic[Key]):
     """A conjunction of rows ``form > 0`` (flag true) or ``form >= 0``, over any hashable coordinates.
 
     Parameters
@@ -118,6 +120,7 @@ class System:
 
     rows : pairs (mapping from coordinate to rational coefficient, strict flag)
     constant : the coordinate that stands for the number 1
+    derived : for the number of a row, the numbers of those that were derived from it
 
     Examples
     ========
@@ -127,25 +130,33 @@ class System:
     (True, False)
     """
 
-    __slots__ = ("_index", "_rows")
+    __slots__ = ("_derived", "_index", "_rows")
 
-    def __init__(self, rows: Iterable[tuple[Mapping[Hashable, Rational], bool]], constant: Hashable) -> None:
-        self._index: dict[Hashable, int] = {constant: 0}
-        self._rows: list[tuple[Row, bool]] = [({0: 1}, True)]
-        for form, strict in rows:
-            self._rows.append((self._numbered(form, 1), strict))
+    def __init__(
+        self,
+        rows: Iterable[tuple[Mapping[Key, Rational], bool]],
+        constant: Key,
+        derived: Mapping[int, Collection[int]] | None = None,
+    ) -> None:
+        self._index: dict[Key, int] = {constant: 0}
+        self._rows: list[tuple[Row, bool]] = [(self._numbered(form), strict) for form, strict in rows]
+        self._derived = derived or {}
 
-    def _numbered(self, form: Mapping[Hashable, Rational], sign: int) -> Row:
+    def _numbered(self, form: Mapping[Key, Rational], sign: int = 1) -> Row:
         index = self._index
         return {index.setdefault(key, len(index)): sign * value for key, value in integral(form).items()}
 
     def consistent(self) -> bool:
         """Whether the rows can hold together."""
-        return consistent(self._rows)
+        return consistent([*self._rows, ({0: 1}, True)])
 
-    def proves(self, form: Mapping[Hashable, Rational], strict: bool, without: Collection[int] = ()) -> bool:
-        """Whether the rows (all but the numbers ``without``) imply form > 0, or form >= 0 if not strict."""
+    def proves(self, form: Mapping[Key, Rational], strict: bool, without: Collection[int] = ()) -> bool:
+        """Whether the rows imply form > 0, or form >= 0 if not strict.
+
+        The rows numbered ``without``, and what was derived from them, are left out.
+        """
         rows = self._rows
         if without:
-            rows = [row for number, row in enumerate(rows, -1) if number not in without]
-        return not consistent([*rows, (self._numbered(form, -1), not strict)])
+            left_out = {other for number in without for other in (number, *self._derived.get(number, ()))}
+            rows = [row for number, row in enumerate(rows) if number not in left_out]
+        return not consistent([*rows, ({0: 1}, True), (self._numbered(form, -1), not strict)])

@@ -7,10 +7,9 @@ from fractions import Fraction
 from math import gcd, lcm
 from typing import TYPE_CHECKING
 
-from sympy import Abs, Expr, Integer, Max, Min, exp, log
+from sympy import Abs, Expr, Integer, Max, Min, exp, integer_nthroot, log
 
-from .form import ONE, Form, Monomial, Rational, add_to, monomial, product, scaled, times
-from .linear import integral
+from .form import ONE, Form, Monomial, Rational, add_to, monomial, primitive, product, scaled, times
 from .signs import NEGATIVE, NOT_REAL, POSITIVE, ZERO
 
 if TYPE_CHECKING:
@@ -18,9 +17,9 @@ if TYPE_CHECKING:
 
 
 def split(form: Form, facts: Facts) -> list[Form]:
-    """Forms that are all > 0 (or >= 0) iff the given one is: x - Abs(y) into x - y and x + y, likewise Max and Min.
+    """Forms that are all > 0 (or >= 0) iff the given one is: x - Abs(y) gives x - y and x + y.
 
-    An extremum that stands with the other sign would need Or; it stays.
+    Max and Min likewise. An extremum that stands with the other sign would need Or; it stays.
     """
     for key, value in form.items():
         for atom, exponent in key:
@@ -51,7 +50,7 @@ def split(form: Form, facts: Facts) -> list[Form]:
 
 
 def divided(form: Form, facts: Facts) -> Form:
-    """A simpler form of the same sign: common factors of known sign divided out, denominators cleared, powers undone."""
+    """A simpler form of the same sign: no common factors or denominators of known sign, powers undone."""
     for _ in range(4):
         simpler = _step(form, facts)
         if simpler is None:
@@ -115,9 +114,9 @@ def _multiplied_out(form: Form, factors: Mapping[Expr, Rational], sign: int, fac
 
 
 def _two_terms(form: Form, facts: Facts) -> Form | None:
-    """c*M - d*N with positive M, N and c, d as (c*M)**r - (d*N)**r with the r that makes the exponents small integers.
+    """c*M - d*N with positive terms as (c*M)**r - (d*N)**r, with small integer exponents.
 
-    So sqrt(a) - sqrt(b), and a**2 - b**2 for positive a, b, become a - b; log(a) - log(b) and exp(a) - exp(b) do too.
+    So sqrt(a) - sqrt(b), and a**2 - b**2 for positive a, b, become a - b; so do log(a) - log(b), exp(a) - exp(b).
     """
     (first, plus), (second, minus) = form.items()
     if (plus > 0) == (minus > 0):
@@ -133,9 +132,9 @@ def _two_terms(form: Form, facts: Facts) -> Form | None:
         facts.mask(atom) != POSITIVE for key in (first, second) for atom, _ in key
     ):
         return None
-    weight = _root(Fraction(abs(plus)) / Fraction(abs(minus)), numerator)
+    weight = _root(abs(Fraction(plus) / Fraction(minus)), numerator)
     if weight is None:
-        weight, numerator = Fraction(abs(plus)) / Fraction(abs(minus)), 1
+        weight, numerator = abs(Fraction(plus) / Fraction(minus)), 1
         if denominator == 1:
             return None
     power = Fraction(denominator, numerator)
@@ -178,10 +177,10 @@ def _root(value: Fraction, degree: int) -> Fraction | None:
         return value
     parts = []
     for integer in (value.numerator, value.denominator):
-        root = round(integer ** (1 / degree))
-        if root**degree != integer:
+        root, exact = integer_nthroot(integer, degree)
+        if not exact:
             return None
-        parts.append(root)
+        parts.append(int(root))
     return Fraction(*parts)
 
 
@@ -204,4 +203,4 @@ def strict(form: Form, facts: Facts) -> tuple[Form, list[Expr]]:
         ((key, value),) = form.items()
         pairs = {a: 1 if e.denominator > 1 and len(key) == 1 else e for a, e in key}
         form = {monomial(pairs)[1]: value}
-    return integral(form), nonzero
+    return primitive(form), nonzero

@@ -2,25 +2,22 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Mapping, Sequence
+from collections.abc import Iterable, Mapping
 from typing import Any
 
 from sympy import And, Eq, Expr, Ge, Gt, Le, Lt, Ne, Or, S
-from sympy.core.relational import Relational
 from sympy.logic.boolalg import Boolean
 
 from .facts import Facts, real_part
-from .form import ONE, Form, add_to, expression, product, scaled
+from .form import Form, Known, Monomial, expression, primitive, scaled
 from .judge import Judge
-from .linear import System, integral
+from .linear import System
+from .projection import FALSE, irredundant
 from .reduce import divided, split, strict
-from .relation import Known, merged, relation_of, row_key, sides
+from .relation import merged, relation_of, row_key, sides
 from .signs import NEGATIVE, NOT_REAL, POSITIVE, ZERO, negated
 
 _INFINITIES = (S.Infinity, S.NegativeInfinity)
-_FALSE: Known = ({ONE: -1}, True)
-_MOST_INEQUALITIES = 3000
-_PRUNE_ABOVE = 8
 
 
 class Region(Judge):
@@ -71,8 +68,6 @@ class Region(Judge):
         new._others = tuple(conditions)
         return new
 
-    # -- building --------------------------------------------------------------------------------------------------
-
     def positive(self, *exprs: Expr) -> Region:
         """The part of the region where every expression is > 0.
 
@@ -112,7 +107,7 @@ class Region(Judge):
             for part in boolean.args:
                 self._require(part, rows, others)
         elif boolean is S.false:
-            rows.append(_FALSE)
+            rows.append(FALSE)
         elif isinstance(boolean, (Gt, Lt, Ge, Le)):
             self._restrict(boolean.gts - boolean.lts, isinstance(boolean, (Gt, Lt)), rows, others)
         elif boolean is not S.true:
@@ -126,7 +121,7 @@ class Region(Judge):
             raise ValueError(f"{expr} has no sign")
         if infinite:
             if infinite[0] is S.NegativeInfinity:
-                rows.append(_FALSE)
+                rows.append(FALSE)
             return
         sign = 1
         if expr.is_Mul:
@@ -140,7 +135,7 @@ class Region(Judge):
             expr = unknown[0] if len(unknown) == 1 else expr.func(*unknown)
         if strictly and expr.is_Pow and expr.exp.is_Integer and expr.exp.is_even and facts.real(expr.base):
             if sign < 0:
-                rows.append(_FALSE)
+                rows.append(FALSE)
             elif not facts.nonzero(expr.base):
                 others.append(Ne(expr.base, 0, evaluate=False))
             return
@@ -155,21 +150,21 @@ class Region(Judge):
                 piece = divided(piece, facts)
             mask = facts.form_mask(piece)
             if not mask & (NOT_REAL | ZERO | POSITIVE) or (mask == ZERO and strictly):
-                rows.append(_FALSE)
+                rows.append(FALSE)
             elif mask & (NEGATIVE | NOT_REAL) or (mask & ZERO and strictly):
                 rows.append((piece, strictly))
             others.extend(Ne(atom, 0, evaluate=False) for atom in nonzero)
-
-    # -- asking ----------------------------------------------------------------------------------------------------
 
     @property
     def empty(self) -> bool:
         """Whether the conditions provably contradict each other, or the facts."""
         if self._empty is None:
-            self._empty = (
-                _FALSE in self._rows
-                or bool(self._rows and not self._together().consistent())
-                or any(self.implies(other) is False for other in self._others)
+            self._empty = FALSE in self._rows or bool(
+                (self._rows or self._others)
+                and (
+                    not self._together().consistent()
+                    or any(self.implies(other) is False for other in self._others)
+                )
             )
         return self._empty
 
@@ -189,7 +184,7 @@ class Region(Judge):
     def _form_mask(self, form: Form) -> int:
         form = divided(form, self.facts)
         mask = self.facts.form_mask(form)
-        if mask & NOT_REAL or mask in (POSITIVE, NEGATIVE, ZERO) or not self._rows:
+        if mask & NOT_REAL or mask in (POSITIVE, NEGATIVE, ZERO) or not (self._rows or self._others):
             return mask
         system = self.facts.system([form], self._all_rows())
         for sign, other in ((1, NEGATIVE), (-1, POSITIVE)):
@@ -217,8 +212,13 @@ class Region(Judge):
                 return False
         return all(other.subs(point) == S.true for other in self._others)
 
+    def _ordered(self) -> list[Known]:
+        """The inequalities, the simplest first."""
+        return sorted(self._rows, key=row_key)
+
     def _all_rows(self) -> list[Known]:
-        rows = list(self._rows)
+        """The inequalities, followed by the equations as pairs of inequalities."""
+        rows = self._ordered()
         for other in self._others:
             if isinstance(other, Eq):
                 form = self.facts.form(other.lhs - other.rhs)
@@ -226,12 +226,10 @@ class Region(Judge):
                     rows += [(form, False), (scaled(form, -1), False)]
         return rows
 
-    def _together(self) -> System:
+    def _together(self) -> System[Monomial]:
         if self._system is None:
             self._system = self.facts.system((), self._all_rows())
         return self._system
-
-    # -- the Boolean -------------------------------------------------------------------------------------------------
 
     def to_boolean(self) -> Boolean:
         """The region as a SymPy Boolean: the fewest inequalities, without what the facts already say.
@@ -252,10 +250,8 @@ class Region(Judge):
     def _booleans(self) -> Boolean:
         if self.empty:
             return S.false
-        rows = _irredundant(self._rows, self.facts, self._all_rows()[len(self._rows) :])
-        relations: list[Boolean] = [
-            relation_of(row, self.facts) for row in sorted(merged(rows, self.facts), key=row_key)
-        ]
+        rows = merged(irredundant(self._ordered(), self._together()), self.facts) if self._rows else []
+        relations: list[Boolean] = [relation_of(row, self.facts) for row in sorted(rows, key=row_key)]
         for other in self._others:
             relations.extend(self._remaining(other))
         return relations[0] if len(relations) == 1 else And(*relations)
@@ -269,122 +265,5 @@ class Region(Judge):
             return [Or(*[part for part in other.args if self.implies(part) is not False])]
         if isinstance(other, Ne):
             form = divided(self.facts.form(other.lhs - other.rhs), self.facts)
-            return [Ne(*sides(integral(form), self.facts)[:2], evaluate=False)]
+            return [Ne(*sides(primitive(form), self.facts)[:2], evaluate=False)]
         return [other]
-
-
-def _irredundant(rows: Sequence[Known], facts: Facts, context: Sequence[Known] = ()) -> list[Known]:
-    """The rows that do not follow from the others; where there is a choice the simpler ones stay."""
-    kept = sorted(rows, key=row_key)
-    if not kept:
-        return kept
-    system = facts.system((), [*kept, *context])
-    dropped: set[int] = set()
-    for position in reversed(range(len(kept))):
-        if system.proves(*kept[position], without={*dropped, position}):
-            dropped.add(position)
-    return [row for position, row in enumerate(kept) if position not in dropped]
-
-
-def project(inequalities: Iterable[Expr | Relational], eliminate: Iterable[Expr], facts: Facts) -> list[Expr]:
-    """The shadow of a region: what linear strict inequalities say once some atoms are eliminated (Fourier-Motzkin).
-
-    Parameters
-    ==========
-
-    inequalities : expressions, each meant to be > 0, or strict relations
-    eliminate : the atoms to eliminate, in which the inequalities are linear with coefficients of known sign
-    facts : Facts
-
-    Returns
-    =======
-
-    list of Expr
-        Expressions without those atoms. All of them are > 0 iff there are values of the atoms for which the given ones
-        are. None is redundant; a system that cannot hold gives ``[-1]``.
-
-    Raises
-    ======
-
-    ValueError
-        if an atom occurs not linearly, if the sign of its coefficient is not known, or if there are too many
-        inequalities.
-
-    Notes
-    =====
-
-    Schrijver, *Theory of Linear and Integer Programming*, 12.2.
-
-    Examples
-    ========
-
-    >>> from sympy import symbols
-    >>> from sympy_mellin_ext.region import Facts, project
-    >>> s, c, a = symbols('s c a', real=True)
-    >>> project([c, s - c, a - s + c, 1 - c], [c], Facts())
-    [a, s, a - s + 1]
-    """
-    rows: list[Known] = []
-    for inequality in inequalities:
-        if isinstance(inequality, Relational):
-            if not isinstance(inequality, (Gt, Lt)):
-                raise ValueError(f"not a strict inequality: {inequality}")
-            inequality = inequality.gts - inequality.lts
-        rows.extend((strict(piece, facts)[0], True) for piece in split(facts.form(S(inequality)), facts))
-    pending = list(eliminate)
-    while pending:
-        # The atom that leaves the fewest inequalities goes first.
-        sides = {atom: _sides(rows, atom, facts) for atom in pending}
-        atom = min(
-            pending,
-            key=lambda one: len(sides[one][0]) * len(sides[one][1]) - len(sides[one][0]) - len(sides[one][1]),
-        )
-        pending.remove(atom)
-        above, below, rows = sides[atom]
-        if len(above) * len(below) + len(rows) > _MOST_INEQUALITIES:
-            raise ValueError(f"too many inequalities in the elimination of {atom}")
-        for slope, rest in above:
-            for other_slope, other_rest in below:
-                form = product(slope, other_rest)
-                add_to(form, product(other_slope, rest))
-                row = (strict(form, facts)[0], True) if form else _FALSE
-                if row not in rows:
-                    rows.append(row)
-        if len(rows) > _PRUNE_ABOVE:
-            rows = _pruned(rows, facts)
-    return [expression(form) for form, _ in _pruned(rows, facts)]
-
-
-def _pruned(rows: list[Known], facts: Facts) -> list[Known]:
-    if _FALSE in rows or not facts.system((), rows).consistent():
-        return [_FALSE]
-    return _irredundant(rows, facts)
-
-
-def _sides(
-    rows: list[Known], atom: Expr, facts: Facts
-) -> tuple[list[tuple[Form, Form]], list[tuple[Form, Form]], list[Known]]:
-    """Rows slope*atom + rest > 0 and -slope*atom + rest > 0, as pairs with slope > 0; and the rows without the atom."""
-    above: list[tuple[Form, Form]] = []
-    below: list[tuple[Form, Form]] = []
-    free: list[Known] = []
-    for row in rows:
-        slope: Form = {}
-        rest: Form = {}
-        for key, value in row[0].items():
-            exponents = dict(key)
-            exponent = exponents.pop(atom, 0)
-            if exponent not in (0, 1) or any(other.has(atom) for other in exponents):
-                raise ValueError(f"not linear in {atom}: {expression(row[0])}")
-            (slope if exponent else rest)[tuple(exponents.items())] = value
-        if not slope:
-            free.append(row)
-            continue
-        mask = facts.form_mask(slope)
-        if mask not in (POSITIVE, NEGATIVE):
-            raise ValueError(f"the coefficient of {atom} has no known sign: {expression(slope)}")
-        if mask == POSITIVE:
-            above.append((slope, rest))
-        else:
-            below.append((scaled(slope, -1), rest))
-    return above, below, free

@@ -11,22 +11,22 @@ from sympy.core.relational import Relational
 
 from .form import (
     Form,
+    Known,
     Monomial,
     Rational,
     add_to,
+    constant,
     expression,
     monomial,
     monomial_expression,
     monomial_key,
+    primitive,
     scaled,
 )
-from .linear import integral
-from .signs import NEGATIVE, POSITIVE
+from .signs import NEGATIVE, NOT_REAL, POSITIVE
 
 if TYPE_CHECKING:
     from .facts import Facts
-
-Known = tuple[Form, bool]
 
 
 def row_key(row: Known) -> tuple[object, ...]:
@@ -47,11 +47,11 @@ def relation_of(row: Known, facts: Facts) -> Relational:
 def sides(form: Form, facts: Facts) -> tuple[Expr, Expr, bool]:
     """Left side, right side, and whether form > 0 means left > right.
 
-    The one quantity of unknown sign stands alone on the left; if there is no such, positive terms and negative ones
-    stand on different sides. Constants go to the right.
+    The one quantity of unknown sign stands alone on the left; if there is no such, positive and negative
+    terms stand on different sides. Constants go to the right.
     """
     keys = sorted(form, key=monomial_key)
-    symbolic = [key for key in keys if not _constant(key)]
+    symbolic = [key for key in keys if not constant(key)]
     alone = _alone(symbolic, facts)
     if alone is not None:
         value = form[alone]
@@ -59,19 +59,15 @@ def sides(form: Form, facts: Facts) -> tuple[Expr, Expr, bool]:
         return monomial_expression(alone), _sum(rest), value > 0
     plus = {key: form[key] for key in symbolic if form[key] > 0}
     minus = {key: -form[key] for key in symbolic if form[key] < 0}
-    constant = {key: form[key] for key in keys if key not in symbolic}
+    numbers = {key: form[key] for key in keys if key not in symbolic}
     larger = bool(plus) and not (minus and symbolic[0] in minus)
     left, right = (plus, minus) if larger else (minus, plus)
-    add_to(right, constant, -1 if larger else 1)
+    add_to(right, numbers, -1 if larger else 1)
     return _sum(left), _sum(right), larger
 
 
 def _sum(form: Mapping[Monomial, Rational]) -> Expr:
     return expression(form) if form else Integer(0)
-
-
-def _constant(key: Monomial) -> bool:
-    return all(not atom.is_Symbol and not atom.free_symbols for atom, _ in key)
 
 
 def _alone(symbolic: Sequence[Monomial], facts: Facts) -> Monomial | None:
@@ -97,10 +93,14 @@ def merged(rows: list[Known], facts: Facts) -> list[Known]:
             if strict != other_strict or first.keys() != second.keys():
                 continue
             odd = [key for key, value in first.items() if second[key] == -value]
-            if len(odd) != 1 or any(second[key] != first[key] for key in first if key != odd[0]):
+            if (
+                len(odd) != 1
+                or facts.monomial_mask(odd[0]) & NOT_REAL
+                or any(second[key] != first[key] for key in first if key != odd[0])
+            ):
                 continue
             others = [key for key in first if key != odd[0]]
-            if all(_constant(key) for key in others) and any(_plain(atom) for atom, _ in odd[0]):
+            if all(constant(key) for key in others) and any(_plain(atom) for atom, _ in odd[0]):
                 continue
             positive: dict[Expr, Rational] = {}
             rest: dict[Expr, Rational] = {}
@@ -108,9 +108,9 @@ def merged(rows: list[Known], facts: Facts) -> list[Known]:
                 (positive if facts.mask(atom) == POSITIVE else rest)[atom] = exponent
             atom = Abs(monomial_expression(monomial(rest)[1]), evaluate=False)
             form = {key: first[key] for key in others}
-            form[monomial({**positive, atom: 1})[1]] = -abs(first[odd[0]])
+            form[monomial({**positive, atom: 1})[1]] = -abs(Fraction(first[odd[0]]))
             remaining = [row for k, row in enumerate(rows) if k not in (i, j)]
-            return merged([*remaining, (integral(form), strict)], facts)
+            return merged([*remaining, (primitive(form), strict)], facts)
     return rows
 
 

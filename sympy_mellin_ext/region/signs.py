@@ -2,30 +2,7 @@
 
 from collections.abc import Callable
 
-from sympy import (
-    Expr,
-    Function,
-    arg,
-    asinh,
-    atan,
-    besseli,
-    besselk,
-    cos,
-    cosh,
-    erf,
-    erfc,
-    erfi,
-    exp,
-    factorial,
-    gamma,
-    im,
-    re,
-    sech,
-    sin,
-    sinh,
-    tanh,
-    zeta,
-)
+from sympy import Expr
 
 from .linear import Rational
 
@@ -98,7 +75,7 @@ def power(base: int, exponent: Rational) -> int:
 
 
 def of_symbol(symbol: Expr) -> int:
-    """What the assumptions of a symbol say. They are complete when it is made, so that nothing has to be deduced."""
+    """What the assumptions of a symbol say; all their consequences were drawn when it was made."""
     known = symbol.assumptions0
     mask = ANY
     for name, case in (
@@ -135,14 +112,3 @@ def of_assumptions(expr: Expr) -> int:
     if expr.is_extended_nonpositive:
         return NON_POSITIVE
     return REAL if expr.is_zero is not False else REAL - ZERO
-
-
-# Real functions of one real variable: what they can be, given what the argument can be.
-# Elementary; for gamma and erf DLMF 5.2.1, 7.2.1.
-ODD_INCREASING: frozenset[type[Function]] = frozenset({sinh, tanh, asinh, atan, erf, erfi})
-POSITIVE_OF_REAL: frozenset[type[Function]] = frozenset({exp, cosh, sech, erfc})
-REAL_OF_REAL: frozenset[type[Function]] = frozenset({sin, cos})
-POSITIVE_OF_POSITIVE: frozenset[type[Function]] = frozenset({gamma, factorial})
-ALWAYS_REAL: frozenset[type[Function]] = frozenset({re, im, arg})
-# Modified Bessel functions of real order and positive argument (DLMF 10.25.2, 10.32.9), zeta to the right of 1.
-BESSEL_K, BESSEL_I, ZETA = besselk, besseli, zeta
