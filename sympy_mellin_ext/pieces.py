@@ -5,7 +5,7 @@ from collections.abc import Iterator
 from dataclasses import dataclass
 from typing import NamedTuple, Protocol
 
-from sympy import Abs, Expr, I, Mul, S, cos, exp, factorial, pi
+from sympy import Abs, Add, Expr, I, Mul, S, binomial, cos, exp, factorial, pi
 from sympy.logic.boolalg import Boolean
 
 from .gamma import GammaProduct
@@ -80,9 +80,13 @@ class Piece:
             u = u.expand() if u.is_Mul else u
         front = self.constant if self.ratio is S.One else self.constant / _modulus(self.ratio)
         if self.logs == 0 and self.pole_order(u) <= 0:
-            factors = [front, product.at(u)]
-            if self.wave is not None:
-                factors.append(_wave_value(self.wave, u))
+            if self.wave is None:
+                factors = [front, product.at(u)]
+            elif u.is_Integer and u.is_positive and self.wave.parts is not None:
+                factors = [front, GammaProduct(product.constant, S.One, product.factors).at(u)]
+                factors.append(_algebraic_wave(self.wave, int(u)))
+            else:
+                factors = [front, product.at(u), _wave_value(self.wave, u)]
             factors.extend(d.at(u) for d in self.dirichlet)
             return Mul(*factors)
         series = self.series(u, self.logs + self.pole_order(u) + 1)
@@ -191,12 +195,22 @@ def _wave_value(wave: Wave, u: Expr) -> Expr:
     return exp(-I * phase)
 
 
+def _algebraic_wave(wave: Wave, u: int) -> Expr:
+    """``modulus**(-u)*cos(u*angle + phase)`` for a whole u, without the angle: Re of (re + I*im)**u."""
+    re, im = wave.parts  # type: ignore[misc]
+    shift = 0 if wave.phase.is_zero else 1  # cos(y - pi/2) = sin(y)
+    total = Add(
+        *(binomial(u, k) * re ** (u - k) * im**k * (-1) ** ((k - shift) // 2) for k in range(shift, u + 1, 2))
+    )
+    return total / (re**2 + im**2) ** u
+
+
 def _wave_series(wave: Wave, u: Expr, rate: Expr, terms: int) -> Series:
     phase = (wave.angle * u).expand() + wave.phase
     if wave.real:
         return cosine_series(phase, wave.angle * rate, terms)
     step = -I * wave.angle * rate
-    return Series(0, exponential(exp(-I * phase), [step] + [S.Zero] * terms, terms))
+    return Series(0, exponential([step] + [S.Zero] * terms, terms), exp(-I * phase))
 
 
 __all__ = ["DirichletFactor", "Piece"]

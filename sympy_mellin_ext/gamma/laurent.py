@@ -7,24 +7,45 @@ from __future__ import annotations
 from collections.abc import Sequence
 from typing import NamedTuple
 
-from sympy import Add, Expr, Integer, Mul, Rational, S, cos, factorial, gamma, harmonic, log, polygamma, zeta
+from sympy import (
+    Add,
+    Dummy,
+    Expr,
+    Integer,
+    Mul,
+    Rational,
+    S,
+    cos,
+    cot,
+    factorial,
+    gamma,
+    harmonic,
+    log,
+    pi,
+    polygamma,
+    sin,
+    zeta,
+)
 
 from .shortest import positive_power
 
 
 class Series(NamedTuple):
-    """``eps**valuation * (coefficients[0] + coefficients[1]*eps + ...)``, truncated."""
+    """``head * eps**valuation * (coefficients[0] + coefficients[1]*eps + ...)``, truncated."""
 
     valuation: int
     coefficients: tuple[Expr, ...]
+    head: Expr = S.One
 
     def coefficient(self, n: int) -> Expr:
         """The coefficient of ``eps**n``; raises IndexError beyond the truncation."""
         k = n - self.valuation
-        return S.Zero if k < 0 else self.coefficients[k]
+        if k < 0 or self.head is S.Zero:
+            return S.Zero
+        return self.head * self.coefficients[k]
 
     def times(self, constant: Expr) -> Series:
-        return Series(self.valuation, tuple(constant * c for c in self.coefficients))
+        return Series(self.valuation, self.coefficients, self.head * constant)
 
 
 def multiply(left: Series, right: Series, terms: int) -> Series:
@@ -33,16 +54,18 @@ def multiply(left: Series, right: Series, terms: int) -> Series:
     coefficients = tuple(
         Add(*(Mul(a[j], b[k - j]) for j in range(k + 1) if j < len(a) and k - j < len(b))) for k in range(terms)
     )
-    return Series(left.valuation + right.valuation, coefficients)
+    if terms > 1:
+        coefficients = tuple(c.expand(log=False, func=False, trig=False, power_base=False) for c in coefficients)
+    return Series(left.valuation + right.valuation, coefficients, left.head * right.head)
 
 
-def exponential(head: Expr, exponents: Sequence[Expr], terms: int) -> tuple[Expr, ...]:
-    """Coefficients of ``head * exp(sum_k exponents[k-1]*eps**k)`` (recursion for exp of a series)."""
+def exponential(exponents: Sequence[Expr], terms: int) -> tuple[Expr, ...]:
+    """Coefficients of ``exp(sum_k exponents[k-1]*eps**k)`` (recursion for exp of a series)."""
     result = [S.One]
     for n in range(1, terms):
         total = Add(*(k * exponents[k - 1] * result[n - k] for k in range(1, n + 1)))
         result.append((total / n).expand())
-    return tuple(head * c for c in result)
+    return tuple(result)
 
 
 def gamma_series(argument: Expr, rate: Expr, power: int, terms: int) -> Series:
@@ -59,15 +82,40 @@ def gamma_series(argument: Expr, rate: Expr, power: int, terms: int) -> Series:
         logs = [polygamma(k - 1, argument) * rate**k / factorial(k) for k in range(1, terms)]
         head = gamma(argument) ** Integer(power)
         valuation = 0
-    return Series(valuation, exponential(head, [power * c for c in logs], terms))
+    return Series(valuation, exponential([power * c for c in logs], terms), head)
+
+
+def sine_series(x: Expr, rate: Expr, power: int, terms: int) -> Series:
+    """Series of ``(pi/sin(pi*(x + rate*eps)))**power`` = (Gamma(x)*Gamma(1-x))**power, DLMF 5.5.3."""
+    if x.is_Integer:
+        logs = [S.Zero if k % 2 else 2 * zeta(k) * rate**k / k for k in range(1, terms)]
+        head, valuation = (S.NegativeOne**x / rate) ** power, -power
+    else:
+        # d/dx log(pi/sin(pi x)) = -pi*cot(pi x); further derivatives are polynomials in the cotangent
+        t = Dummy("t")
+        cotangent, derivative, logs = cot((pi * x).expand()), -pi * t, []
+        for k in range(1, terms):
+            logs.append(derivative.subs(t, cotangent) * rate**k / factorial(k))
+            derivative = (-pi * (1 + t**2) * derivative.diff(t)).expand()
+        head, valuation = (pi / sin((pi * x).expand())) ** Integer(power), 0
+    return Series(valuation, exponential([power * c for c in logs], terms), head)
+
+
+def linear_series(value: Expr, rate: Expr, power: int, terms: int) -> Series:
+    """Series of ``(value + rate*eps)**power`` for power +1 or -1."""
+    if value is S.Zero:
+        return Series(power, (S.One,) + (S.Zero,) * (terms - 1), rate**power)
+    step = rate / value
+    coefficients = [S.One, step] + [S.Zero] * terms if power > 0 else [(-step) ** k for k in range(terms)]
+    return Series(0, tuple(coefficients[:terms]), value**power)
 
 
 def power_series(base: Expr, exponent: Expr, rate: Expr, terms: int) -> Series:
     """Series of ``base**(exponent + rate*eps)``."""
     if base is S.One or terms == 1:
-        return Series(0, (positive_power(base, exponent),) + (S.Zero,) * (terms - 1))
+        return Series(0, (S.One,) + (S.Zero,) * (terms - 1), positive_power(base, exponent))
     step = rate * log(base)
-    return Series(0, exponential(positive_power(base, exponent), [step] + [S.Zero] * (terms - 2), terms))
+    return Series(0, exponential([step] + [S.Zero] * (terms - 2), terms), positive_power(base, exponent))
 
 
 def cosine_series(phase: Expr, rate: Expr, terms: int) -> Series:

@@ -11,7 +11,7 @@ from typing import NamedTuple
 
 from sympy import Add, Expr, Integer, Mul, Pow, Rational, S, Symbol, sympify
 
-from .laurent import Series, gamma_series, multiply, power_series
+from .laurent import Series, gamma_series, linear_series, multiply, power_series, sine_series
 from .shortest import positive_power, shortest_quotient
 
 # A pole ladder whose first so many rungs are all cancelled is taken to be cancelled for good.
@@ -181,8 +181,22 @@ class GammaProduct:
     def laurent(self, s0: Expr, terms: int, rate: Expr = S.One) -> Series:
         """Laurent series of ``G(s0 + rate*eps)`` in ``eps``: ``terms`` coefficients from the leading one."""
         series = power_series(self.scale, -s0, -rate, terms)
-        for a, A, e in self.factors:
-            series = multiply(series, gamma_series((a + A * s0).expand(), A * rate, e, terms), terms)
+        rest = [((a + A * s0).expand(), A * rate, e) for a, A, e in self.factors]
+        while rest:
+            a, r, e = rest.pop()
+            partner = next((f for f in rest if f[2] == e and f[1] == -r and (f[0] + a - 1).is_Integer), None)
+            if partner is None:
+                factor = gamma_series(a, r, e, terms)
+            else:
+                # Gamma(a)*Gamma(n-a) = pi/sin(pi a) * (1-a)_(n-1)
+                rest.remove(partner)
+                n = int((partner[0] + a))
+                factor = sine_series(a, r, e, terms)
+                for j in range(n - 1):
+                    factor = multiply(factor, linear_series(1 - a + j, -r, e, terms), terms)
+                for j in range(1 - n):
+                    factor = multiply(factor, linear_series(-a - j, -r, -e, terms), terms)
+            series = multiply(series, factor, terms)
         return series.times(self.constant)
 
     def as_expr(self, s: Symbol) -> Expr:

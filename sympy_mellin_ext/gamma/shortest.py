@@ -6,7 +6,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 
-from sympy import Expr, Integer, Mul, Pow, S, factorial, gamma, pi, sin, sqrt
+from sympy import Add, Expr, Integer, Mul, Pow, S, cos, factorial, gamma, pi, sin, sqrt
 
 # Integer differences up to this size become a polynomial; beyond it two Gammas are shorter.
 _LONGEST_POLYNOMIAL = 4
@@ -17,11 +17,15 @@ def positive_power(base: Expr, exponent: Expr) -> Expr:
 
     Valid where ``abs(arg(base)) < pi``, which the regions of the scales guarantee.
     """
-    if base.is_Pow and base.exp.is_Rational and -1 <= base.exp <= 1:
-        return Pow(base.base, base.exp * exponent)
+    if base.is_Pow and (
+        (base.exp.is_Rational and -1 <= base.exp <= 1) or (base.base.is_positive and base.exp.is_real)
+    ):
+        return Pow(base.base, (base.exp * exponent).expand())
     if base.is_Mul and base.args[0].is_Rational and base.args[0].is_positive:
         number, rest = base.args[0], Mul(*base.args[1:])
         return Pow(number.p, exponent) * Pow(number.q, -exponent) * positive_power(rest, exponent)
+    if base.is_Mul and base.is_positive and all(a.is_positive for a in base.args):
+        return Mul(*(positive_power(a, exponent) for a in base.args))
     if base.is_Rational and base.p == 1 and base.q > 1:
         return Pow(base.q, -exponent)
     if base.is_Mul and not base.is_positive:
@@ -59,11 +63,54 @@ def shortest_quotient(up: Sequence[Expr], down: Sequence[Expr]) -> Expr:
     outside: list[Expr] = []
     _cancel_integer_differences(ups, downs, outside)
     _duplicate(ups, downs, outside)
+    _cosine(ups, downs, outside)
     _reflect(ups, 1, outside)
     _reflect(downs, -1, outside)
     _cancel_integer_differences(ups, downs, outside)
     _absorb_linear(ups, downs, outside)
     return Mul(*outside, *(_gamma(a) for a in ups), *(1 / _gamma(a) for a in downs))
+
+
+def collect_powers(expr: Expr) -> Expr:
+    """Add the exponents of equal bases in a product (or in each product of a sum).
+
+    SymPy itself adds only like exponents: ``b**(1 - c)*b**(c + k)`` stays as it is.
+
+    Examples
+    --------
+    >>> from sympy import symbols
+    >>> from sympy_mellin_ext.gamma.shortest import collect_powers
+    >>> b, c, k = symbols('b c k', positive=True)
+    >>> collect_powers(b**(1 - c)*b**(c + k)/b)
+    b**k
+    """
+    if expr.is_Add:
+        return Add(*(collect_powers(a) for a in expr.args))
+    if not expr.is_Mul:
+        return expr
+    exponents: dict[Expr, list[Expr]] = {}
+    number: Expr = S.One
+    rest: list[Expr] = []
+    for a in expr.args:
+        if a.is_Rational:
+            number = number * a
+        elif a.is_Pow or a.is_Symbol:
+            base, exponent = a.as_base_exp()
+            if base.is_Rational and base.p == 1:
+                base, exponent = Integer(base.q), -exponent
+            exponents.setdefault(base, []).append(exponent)
+        else:
+            rest.append(a)
+    for base, powers in exponents.items():
+        if base.is_Integer and base > 1 and not all(p.is_Rational for p in powers):
+            while number.p % base.p == 0 and number is not S.Zero:
+                number, powers = number / base, [*powers, S.One]
+            while number.q % base.p == 0:
+                number, powers = number * base, [*powers, S.NegativeOne]
+            exponents[base] = powers
+    if number is S.One and all(len(p) == 1 for p in exponents.values()):
+        return expr
+    return Mul(number, *(Pow(b, Add(*p)) for b, p in exponents.items()), *rest)
 
 
 def _gamma(argument: Expr) -> Expr:
@@ -145,7 +192,11 @@ def _reflect(side: list[Expr], sign: int, outside: list[Expr]) -> None:
         again = False
         for i, a in enumerate(side):
             for b in side[i + 1 :]:
-                total = (a + b).expand() if not (a + b).is_Number else a + b
+                if a.is_Integer or b.is_Integer:
+                    continue
+                total = a + b
+                if not total.is_Number:
+                    total = total.expand()
                 if not total.is_Integer:
                     continue
                 if total != 1 and not (a.is_Number or total == 0 or (sign < 0 and 0 <= total <= 2)):
@@ -162,6 +213,21 @@ def _reflect(side: list[Expr], sign: int, outside: list[Expr]) -> None:
                 again = True
                 break
             if again:
+                break
+
+
+def _cosine(ups: list[Expr], downs: list[Expr], outside: list[Expr]) -> None:
+    """Gamma(x)/Gamma(1/2-x) = 2**(1-2x)*cos(pi x)*Gamma(2x)/sqrt(pi), regular where Gamma(x) is."""
+    for a in list(ups):
+        for b in downs:
+            if a.is_Number or b.is_Number or not a.has_free(*b.free_symbols):
+                continue
+            if (a + b).expand() is S.Half:
+                ups.remove(a)
+                downs.remove(b)
+                double = (2 * a).expand()
+                ups.append(double)
+                outside.append(Pow(2, 1 - double) * cos((pi * a).expand()) / sqrt(pi))
                 break
 
 

@@ -15,11 +15,14 @@ class Wave(NamedTuple):
 
     ``real``: the mean of both conjugate rotations, ``cos(angle*u + phase)``.
     Otherwise: one rotation, ``exp(-I*(angle*u + phase))``.
+    ``parts``: real and imaginary part of the scale, where they are simpler than modulus and angle; only
+    with phase 0 or -pi/2.
     """
 
     angle: Expr
     phase: Expr
     real: bool
+    parts: tuple[Expr, Expr] | None = None
 
 
 @dataclass(frozen=True)

@@ -148,7 +148,7 @@ def _mode_kernel(mode: _Mode, ratio: Expr, facts: Facts) -> list[tuple[Expr, tup
             return [(coefficient, ())]
         return _decaying(coefficient, decay, ratio, facts)
     known = facts.sign(frequency)
-    if known is None:
+    if known is None and decay is S.Zero:
         condition = Ne(frequency, 0)
         if mode.shape == "sin":
             coefficient = coefficient * sign(frequency)
@@ -174,7 +174,7 @@ def _mode_kernel(mode: _Mode, ratio: Expr, facts: Facts) -> list[tuple[Expr, tup
     if positive == -1:
         return None
     condition = inside if positive == 1 else And(inside, decay > 0)
-    wave = Wave(angle, S.Zero if mode.shape == "cos" else -pi / 2, True)
+    wave = Wave(angle, S.Zero if mode.shape == "cos" else -pi / 2, True, (decay, frequency))
     return [(coefficient, (Kernel("exp", EXP.with_scale(modulus), ratio, wave, condition, True, _SOURCE),))]
 
 

@@ -13,6 +13,7 @@ from dataclasses import dataclass, field
 
 from sympy import Add, Expr, S
 
+from ..gamma.shortest import collect_powers
 from ..pieces import Piece
 from ..region import Facts, Region, real_part
 
@@ -133,9 +134,8 @@ def converge(pieces: Sequence[Piece], facts: Facts) -> tuple[Region, Edge, Edge]
 def total_value(pieces: Sequence[Piece]) -> Expr:
     """The sum of the finite parts."""
     if len(pieces) == 1:
-        return pieces[0].value()
-    values = [piece.value() for piece in pieces]
-    total = Add(*values)
+        return collect_powers(pieces[0].value())
+    total = Add(*(piece.value() for piece in pieces))
     if any(piece.logs or piece.product is None or piece.pole_order(piece.u) for piece in pieces):
         total = total.expand(log=False, power_base=False, power_exp=False, trig=False)
-    return total
+    return collect_powers(total)
