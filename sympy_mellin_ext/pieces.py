@@ -5,11 +5,12 @@ from collections.abc import Iterator
 from dataclasses import dataclass
 from typing import NamedTuple, Protocol
 
-from sympy import Abs, Add, Expr, I, Mul, S, binomial, cos, exp, factorial, pi
+from sympy import Abs, Add, Expr, I, Mul, S, acos, binomial, chebyshevt, chebyshevu, cos, cot, exp, factorial, pi, sqrt
 from sympy.logic.boolalg import Boolean
 
 from .gamma import GammaProduct
-from .gamma.laurent import Series, cosine_series, exponential, multiply
+from .gamma.laurent import Series, cosine_series, cotangent_series, exponential, multiply, power_series
+from .gamma.shortest import positive_power
 from .matching import Term, Wave
 from .region import real_part
 
@@ -44,6 +45,7 @@ class Piece:
     dirichlet: tuple[DirichletFactor, ...] = ()
     condition: Boolean = S.true
     inside: bool = True
+    pole_order_inside: int = 0
 
     @classmethod
     def of_term(cls, term: Term) -> Piece:
@@ -52,8 +54,9 @@ class Piece:
             return cls(term.coefficient, term.power, term.logs)
         (k,) = term.kernels
         return cls(
-            term.coefficient, term.power, term.logs, k.product, k.ratio, k.wave, (), k.condition, k.inside
-        )
+            term.coefficient, term.power, term.logs, k.product, k.ratio, k.wave, (), k.condition, k.inside,
+            int(k.arguments[0]) if k.name == "pole" else 0,
+        )  # fmt: skip
 
     @property
     def u(self) -> Expr:
@@ -65,7 +68,7 @@ class Piece:
         old, new = replacement
         return Piece(
             self.constant.subs(old, new), self.power.subs(old, new), self.logs, self.product, self.ratio.subs(old, new),
-            self.wave, self.dirichlet, self.condition, self.inside,
+            self.wave, self.dirichlet, self.condition, self.inside, self.pole_order_inside,
         )  # fmt: skip
 
     # -- value -----------------------------------------------------------------------------------------
@@ -82,6 +85,8 @@ class Piece:
         if self.logs == 0 and self.pole_order(u) <= 0:
             if self.wave is None:
                 factors = [front, product.at(u)]
+            elif self.pole_order_inside == 1:
+                factors = [front, positive_power(product.scale, -u), pi * cot((pi * u).expand())]
             elif u.is_Integer and u.is_positive and self.wave.parts is not None:
                 factors = [front, GammaProduct(product.constant, S.One, product.factors).at(u)]
                 factors.append(_algebraic_wave(self.wave, int(u)))
@@ -104,6 +109,10 @@ class Piece:
         """Laurent series of the transform at ``u + eps/ratio``, without the constant."""
         assert self.product is not None
         rate = 1 / self.ratio
+        if self.pole_order_inside == 1:
+            # Gamma(u)*Gamma(1-u)*cos(pi*u)
+            scale = power_series(self.product.scale, -u, -rate, terms)
+            return multiply(scale, cotangent_series(u, rate, terms), terms)
         series = self.product.laurent(u, terms, rate)
         if self.wave is not None:
             series = multiply(series, _wave_series(self.wave, u, rate, terms), terms)
@@ -154,7 +163,7 @@ class Piece:
 
     def growth(self) -> Growth | None:
         """What the growth on vertical lines demands (design table); None: not a Mellin transform of g."""
-        if self.product is None:
+        if self.product is None or self.pole_order_inside:
             return Growth()
         lam, delta = self.product.lam, self.product.delta
         angle = abs(self.wave.angle) if self.wave is not None else S.Zero
@@ -190,9 +199,30 @@ def _modulus(ratio: Expr) -> Expr:
 
 def _wave_value(wave: Wave, u: Expr) -> Expr:
     phase = (wave.angle * u).expand() + wave.phase
-    if wave.real:
-        return cos(phase)
-    return exp(-I * phase)
+    if not wave.real:
+        return exp(-I * phase)
+    if isinstance(wave.angle, acos):
+        algebraic = _half_angles(phase, wave.angle)
+        if algebraic is not None:
+            return algebraic
+    return cos(phase)
+
+
+def _half_angles(phase: Expr, angle: Expr) -> Expr | None:
+    """``cos(k*angle + offset)`` in terms of ``c = cos(angle)`` for whole and half k, offset 0 or -pi/2."""
+    k = phase.coeff(angle)
+    offset = phase - k * angle
+    if not k.is_Rational or k.q > 2 or offset.has(angle) or not (offset.is_zero or offset == -pi / 2):
+        return None
+    c, sign = angle.args[0], 1 if k >= 0 else -1
+    n = abs(k)
+    if n.q == 1:
+        return chebyshevt(n, c) if offset.is_zero else sign * sqrt(1 - c) * sqrt(1 + c) * chebyshevu(n - 1, c)
+    # cos(n*t) and sin(n*t) at n = m + 1/2 by the half angle, DLMF 18.5.3-4
+    m = n - S.Half
+    difference = chebyshevu(m, c) - (chebyshevu(m - 1, c) if m > 0 else 0)
+    total = chebyshevu(m, c) + (chebyshevu(m - 1, c) if m > 0 else 0)
+    return sqrt((1 + c) / 2) * difference if offset.is_zero else sign * sqrt((1 - c) / 2) * total
 
 
 def _algebraic_wave(wave: Wave, u: int) -> Expr:

@@ -101,6 +101,25 @@ def sine_series(x: Expr, rate: Expr, power: int, terms: int) -> Series:
     return Series(valuation, exponential([power * c for c in logs], terms), head)
 
 
+def cotangent_series(x: Expr, rate: Expr, terms: int) -> Series:
+    """Series of ``pi*cot(pi*(x + rate*eps))``, DLMF 4.19.6 and 4.20.9."""
+    if x.is_Integer:
+        # pi*cot(pi*d) = 1/d - 2*sum zeta(2k)*d**(2k-1)
+        coefficients = [S.One] + [
+            S.Zero if k % 2 else -2 * zeta(k) * rate**k for k in range(1, terms)
+        ]
+        return Series(-1, tuple(coefficients), 1 / rate)
+    # every derivative is a polynomial in the cotangent over sin**2
+    t = Dummy("t")
+    cotangent, square = cot((pi * x).expand()), sin((pi * x).expand()) ** 2
+    coefficients, polynomial = [pi * cotangent], -(pi**2)
+    for k in range(1, terms):
+        coefficients.append(polynomial.subs(t, cotangent) / square * rate**k / factorial(k))
+        # d/dx (p(t)/sin**2) = -pi*((1 + t**2)*p'(t) + 2*t*p(t))/sin**2
+        polynomial = (-pi * ((1 + t**2) * polynomial.diff(t) + 2 * t * polynomial)).expand()
+    return Series(0, tuple(coefficients))
+
+
 def linear_series(value: Expr, rate: Expr, power: int, terms: int) -> Series:
     """Series of ``(value + rate*eps)**power`` for power +1 or -1."""
     if value is S.Zero:

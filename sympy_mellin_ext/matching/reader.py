@@ -38,6 +38,7 @@ from ..kernels.elementary import power as power_transform
 from ..kernels.general import hyper_transform, meijer_transform
 from ..kernels.table import Row
 from ..region import Facts, real_part
+from .fractions import pole_kernel, split
 from .monomials import monomial, monomials
 from .term import Kernel, Term, Wave
 from .waves import Draft, finish
@@ -92,8 +93,14 @@ class Reader:
         return drafts
 
     def _product(self, expr: Expr) -> Drafts | None:
+        args: tuple[Expr, ...] = expr.args
+        fractions = [a for a in args if _is_fraction(a, self.x)]
         drafts: Drafts = [Draft()]
-        for a in expr.args:
+        if len(fractions) > 1:
+            part = split([(a.base, -int(a.exp)) for a in fractions], self.x, self.facts)
+            if part is not None:
+                drafts, args = part, tuple(a for a in args if a not in fractions)
+        for a in args:
             part = self.read(a)
             if part is None:
                 return None
@@ -152,6 +159,8 @@ class Reader:
         square = self._as_square(parts)
         if square is not None:
             return self._binomial_power(square, 2 * exponent)
+        if exponent.is_Integer:
+            return split([(base, -int(exponent))], self.x, self.facts)
         return None
 
     def _as_square(self, parts: list[tuple[Expr, Expr]]) -> list[tuple[Expr, Expr]] | None:
@@ -182,6 +191,12 @@ class Reader:
         ratio = p1 - p0
         if self.facts.sign(ratio) in (None, 0):
             return None
+        if sign0 is not None and sign1 is not None and sign0 * sign1 == -1:
+            # a pole on the half line: of use only where it cancels
+            if not exponent.is_Integer:
+                return None
+            kernel = pole_kernel(-int(exponent), -c1 / c0, ratio)
+            return [Draft(coefficient=Pow(c0, exponent), power=p0 * exponent, kernels=(kernel,))]
         kernel = self._kernel(
             "power", power_transform(-exponent), c1 / c0, ratio, "DLMF 5.12.3", arguments=(-exponent,)
         )
@@ -417,6 +432,10 @@ class Reader:
         if type(expr) is Pow:
             return bool(expr.exp.is_integer) and self._real(expr.base) or self._nonnegative(expr.base) and bool(expr.exp.is_real)
         return type(expr) is log and self._nonnegative(expr.args[0])
+
+
+def _is_fraction(expr: Expr, x: Symbol) -> bool:
+    return type(expr) is Pow and type(expr.base) is Add and expr.exp.is_Integer and expr.exp.is_negative and expr.has_free(x)
 
 
 def sector(scale: Expr, lam: Rational) -> Boolean:

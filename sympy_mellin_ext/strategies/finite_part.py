@@ -11,9 +11,10 @@ from __future__ import annotations
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass, field
 
-from sympy import Add, Expr, S
+from sympy import Add, Expr, S, bernoulli, factorial, log
 
-from ..gamma.shortest import collect_powers
+from ..gamma.laurent import Series, exponential, linear_series, multiply
+from ..gamma.shortest import collect_powers, positive_power
 from ..pieces import Piece
 from ..region import Facts, Region, real_part
 
@@ -102,8 +103,10 @@ def _vanishes(total: Expr) -> bool:
     return expanded.together().as_numer_denom()[0].expand() is S.Zero
 
 
-def converge(pieces: Sequence[Piece], facts: Facts) -> tuple[Region, Edge, Edge] | str:
+def converge(pieces: Sequence[Piece], facts: Facts, principal: bool = False) -> tuple[Region, Edge, Edge] | str:
     """The region where the integral over (0, oo) of the sum converges, or the reason why there is none."""
+    if any(piece.pole_order_inside for piece in pieces) and not poles_cancel(pieces, principal):
+        return "diverges"
     region = Region(facts)
     conditional: dict[int, list[Expr]] = {1: [], -1: []}
     for piece in pieces:
@@ -129,6 +132,38 @@ def converge(pieces: Sequence[Piece], facts: Facts) -> tuple[Region, Edge, Edge]
     if region.empty:
         return "diverges"
     return region, edges[0], edges[1]
+
+
+def poles_cancel(pieces: Sequence[Piece], principal: bool) -> bool:
+    """Whether the poles on the half line cancel in the total (or are simple, for a principal value).
+
+    With x = a*exp(y), every piece is ``C*a**p*exp(p*y)*(log(a) + y)**k*(1 - exp(r*y))**(-n)`` near its pole a;
+    the principal parts in y of the pieces with one a must add up to nothing.
+    """
+    parts: dict[Expr, dict[int, list[Expr]]] = {}
+    for piece in pieces:
+        n = piece.pole_order_inside
+        if not n:
+            continue
+        assert piece.product is not None
+        r = piece.ratio
+        a = positive_power(piece.product.scale, -1 / r)
+        series = linear_series(log(a), S.One, 1, n)
+        total = Series(0, exponential([piece.power] + [S.Zero] * n, n))
+        for _ in range(piece.logs):
+            total = multiply(total, series, n)
+        # (1 - exp(r*y))**(-1) = -1/(r*y) * (1 + r*y/2 + ...)**(-1), Bernoulli numbers (DLMF 24.2.1)
+        bernoullis = tuple(bernoulli(j) * (-1 if j == 1 and bernoulli(1) > 0 else 1) * r**j / factorial(j) for j in range(n))
+        for _ in range(n):
+            total = multiply(total, Series(-1, bernoullis, -1 / r), n)
+        total = total.times(piece.constant * a**piece.power)
+        for order in range(total.valuation, 0):
+            parts.setdefault(a, {}).setdefault(order, []).append(total.coefficient(order))
+    for orders in parts.values():
+        for order, column in orders.items():
+            if not (principal and order == -1) and not _vanishes(Add(*column)):
+                return False
+    return True
 
 
 def total_value(pieces: Sequence[Piece]) -> Expr:
