@@ -75,7 +75,7 @@ def _positive_right_of_zero(arguments: Sequence[Expr], masks: Sequence[int], fac
 
 
 # For real arguments; None: ask SymPy. Elementary, but for gamma (DLMF 5.2.1), the error functions
-# (DLMF 7.2.1, 7.2.2), the modified Bessel functions of real order (DLMF 10.25.2, 10.32.9) and zeta (DLMF 25.2.1).
+# (DLMF 7.2.1, 7.2.2), modified Bessel functions of real order (DLMF 10.25.2, 10.32.9), zeta (DLMF 25.2.1).
 _RULES: dict[type[Expr], _Rule] = {
     **dict.fromkeys((exp, cosh, sech, erfc), _positive),
     **dict.fromkeys((sinh, tanh, asinh, atan, erf, erfi), _odd),

@@ -116,7 +116,7 @@ def _multiplied_out(form: Form, factors: Mapping[Expr, Rational], sign: int, fac
 def _two_terms(form: Form, facts: Facts) -> Form | None:
     """c*M - d*N with positive terms as (c*M)**r - (d*N)**r, with small integer exponents.
 
-    So sqrt(a) - sqrt(b), and a**2 - b**2 for positive a, b, become a - b; so do log(a) - log(b), exp(a) - exp(b).
+    So sqrt(a) - sqrt(b), a**2 - b**2, log(a) - log(b) and exp(a) - exp(b) become a - b.
     """
     (first, plus), (second, minus) = form.items()
     if (plus > 0) == (minus > 0):

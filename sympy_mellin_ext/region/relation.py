@@ -47,8 +47,8 @@ def relation_of(row: Known, facts: Facts) -> Relational:
 def sides(form: Form, facts: Facts) -> tuple[Expr, Expr, bool]:
     """Left side, right side, and whether form > 0 means left > right.
 
-    The one quantity of unknown sign stands alone on the left; if there is no such, positive and negative
-    terms stand on different sides. Constants go to the right.
+    The one quantity of unknown sign stands alone on the left; if there is none, positive and negative terms
+    stand on different sides. Constants go to the right.
     """
     keys = sorted(form, key=monomial_key)
     symbolic = [key for key in keys if not constant(key)]
@@ -57,13 +57,20 @@ def sides(form: Form, facts: Facts) -> tuple[Expr, Expr, bool]:
         value = form[alone]
         rest = scaled({key: v for key, v in form.items() if key != alone}, -1 / Fraction(value))
         return monomial_expression(alone), _sum(rest), value > 0
+    plus = primitive({key: form[key] for key in symbolic})
+    form = scaled(form, Fraction(plus[symbolic[0]]) / form[symbolic[0]]) if symbolic else form
     plus = {key: form[key] for key in symbolic if form[key] > 0}
     minus = {key: -form[key] for key in symbolic if form[key] < 0}
     numbers = {key: form[key] for key in keys if key not in symbolic}
-    larger = bool(plus) and not (minus and symbolic[0] in minus)
+    larger = bool(plus) and (not minus or _place(plus, symbolic[0]) < _place(minus, symbolic[0]))
     left, right = (plus, minus) if larger else (minus, plus)
     add_to(right, numbers, -1 if larger else 1)
     return _sum(left), _sum(right), larger
+
+
+def _place(side: Form, first: Monomial) -> tuple[bool, bool, bool]:
+    """Which side goes to the left, the smaller: one term, without a coefficient, the first one."""
+    return (len(side) > 1, 1 not in side.values(), first not in side)
 
 
 def _sum(form: Mapping[Monomial, Rational]) -> Expr:
