@@ -11,6 +11,7 @@ from sympy.logic.boolalg import Boolean
 from .gamma import GammaProduct
 from .gamma.laurent import Series, cosine_series, cotangent_series, exponential, multiply, power_series
 from .gamma.shortest import positive_power
+from .gamma.tilt import Tilt
 from .matching import Term, Wave
 from .region import real_part
 
@@ -46,6 +47,7 @@ class Piece:
     condition: Boolean = S.true
     inside: bool = True
     pole_order_inside: int = 0
+    tilt: Tilt | None = None
 
     @classmethod
     def of_term(cls, term: Term) -> Piece:
@@ -55,7 +57,7 @@ class Piece:
         (k,) = term.kernels
         return cls(
             term.coefficient, term.power, term.logs, k.product, k.ratio, k.wave, (), k.condition, k.inside,
-            int(k.arguments[0]) if k.name == "pole" else 0,
+            int(k.arguments[0]) if k.name == "pole" else 0, k.tilt,
         )  # fmt: skip
 
     @property
@@ -68,7 +70,7 @@ class Piece:
         old, new = replacement
         return Piece(
             self.constant.subs(old, new), self.power.subs(old, new), self.logs, self.product, self.ratio.subs(old, new),
-            self.wave, self.dirichlet, self.condition, self.inside, self.pole_order_inside,
+            self.wave, self.dirichlet, self.condition, self.inside, self.pole_order_inside, self.tilt,
         )  # fmt: skip
 
     # -- value -----------------------------------------------------------------------------------------
@@ -82,7 +84,7 @@ class Piece:
         if not u.is_Atom:
             u = u.expand() if u.is_Mul else u
         front = self.constant if self.ratio is S.One else self.constant / _modulus(self.ratio)
-        if self.logs == 0 and self.pole_order(u) <= 0:
+        if self.logs == 0 and self.tilt is None and self.pole_order(u) <= 0:
             if self.wave is None:
                 factors = [front, product.at(u)]
             elif self.pole_order_inside == 1:
@@ -101,6 +103,8 @@ class Piece:
         """Order of the pole that the Gammas and the Dirichlet series make at ``u``; zeros do not count."""
         assert self.product is not None
         order = max(self.product.order_at(u), 0)
+        if order and self.tilt is not None:
+            order += self.tilt.order
         if self.dirichlet:
             order += sum(1 for d in self.dirichlet for p in d.poles() if (p - u).expand().is_zero)
         return order
@@ -109,6 +113,10 @@ class Piece:
         """Laurent series of the transform at ``u + eps/ratio``, without the constant."""
         assert self.product is not None
         rate = 1 / self.ratio
+        if self.tilt is not None:
+            scale = power_series(self.product.scale, -u, -rate, terms)
+            tilted = self.tilt.laurent(u, rate, -self.pole_order(u), terms)
+            return multiply(scale, tilted, terms).times(self.product.constant)
         if self.pole_order_inside == 1:
             # Gamma(u)*Gamma(1-u)*cos(pi*u)
             scale = power_series(self.product.scale, -u, -rate, terms)
@@ -222,7 +230,7 @@ def _half_angles(phase: Expr, angle: Expr) -> Expr | None:
     m = n - S.Half
     difference = chebyshevu(m, c) - (chebyshevu(m - 1, c) if m > 0 else 0)
     total = chebyshevu(m, c) + (chebyshevu(m - 1, c) if m > 0 else 0)
-    return sqrt((1 + c) / 2) * difference if offset.is_zero else sign * sqrt((1 - c) / 2) * total
+    return sqrt(1 + c) / sqrt(2) * difference if offset.is_zero else sign * sqrt(1 - c) / sqrt(2) * total
 
 
 def _algebraic_wave(wave: Wave, u: int) -> Expr:

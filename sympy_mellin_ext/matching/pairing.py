@@ -3,9 +3,10 @@ from __future__ import annotations
 
 from dataclasses import replace
 
-from sympy import S, pi
+from sympy import Integer, S, pi
 
 from ..gamma import GammaProduct
+from ..gamma.tilt import Tilt, TiltedFactor
 from ..kernels import pairs
 from ..kernels.elementary import power as power_transform
 from ..kernels.pairs import Pair
@@ -18,7 +19,7 @@ def combine(kernels: tuple[Kernel, ...]) -> tuple[Kernel, ...]:
     """Merge powers of one binomial and pairs that have a row of their own."""
     if len(kernels) < 2:
         return kernels
-    kernels = _merge_powers(kernels)
+    kernels = _merge_logarithms(_merge_powers(kernels))
     merged = list(kernels)
     again = True
     while again and len(merged) > 1:
@@ -53,6 +54,42 @@ def _merge_powers(kernels: tuple[Kernel, ...]) -> tuple[Kernel, ...]:
         else:
             merged.append(kernel)
     return tuple(k for k in merged if not (k.name == "power" and k.arguments[0] is S.Zero))
+
+
+def _merge_logarithms(kernels: tuple[Kernel, ...]) -> tuple[Kernel, ...]:
+    """``log(1+z)**k * (1+z)**(-c)``: a k-th derivative in c."""
+    logs = [k for k in kernels if k.name == "log1p"]
+    if not logs:
+        return kernels
+    first = logs[0]
+    same = [k for k in logs if k.ratio == first.ratio and k.product.scale == first.product.scale]
+    partner = next(
+        (
+            k
+            for k in kernels
+            if k.name == "power" and k.wave is None and k.ratio == first.ratio and k.product.scale == first.product.scale
+        ),
+        None,
+    )
+    if len(same) == 1 and partner is None:
+        return kernels
+    n, c = len(same), S.Zero if partner is None else partner.arguments[0]
+    scale = first.product.scale
+    tilt = Tilt(
+        n,
+        (
+            TiltedFactor(S.Zero, S.One, S.Zero, 1),
+            TiltedFactor(c, S.NegativeOne, S.NegativeOne, 1),
+            TiltedFactor(c, S.Zero, S.NegativeOne, -1),
+        ),
+    )
+    product = GammaProduct.of(up=[(1 if c is S.Zero else 0, 1), (c, -1)], scale=scale)
+    kernel = Kernel(
+        "powerlog", product, first.ratio, None, first.condition, first.inside, "DLMF 5.12.3, differentiated in b",
+        (Integer(n), c), tilt,
+    )  # fmt: skip
+    used = [id(k) for k in same] + ([] if partner is None else [id(partner)])
+    return (*(k for k in kernels if id(k) not in used), kernel)
 
 
 def _pair(first: Kernel, second: Kernel) -> Kernel | None:

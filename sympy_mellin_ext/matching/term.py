@@ -8,6 +8,7 @@ from sympy import Expr, Integer, S
 from sympy.logic.boolalg import Boolean
 
 from ..gamma import GammaProduct
+from ..gamma.tilt import Tilt
 
 
 class Wave(NamedTuple):
@@ -49,6 +50,9 @@ class Kernel:
         Where the transform is published.
     arguments : tuple of Expr
         Parameters of the function (orders), for strategies that combine kernels.
+    tilt : Tilt or None
+        Derivative in a parameter, whose value replaces that of ``product``; the product then only says
+        where the poles are (each of the right side counts ``tilt.order`` times more).
     """
 
     name: str
@@ -59,6 +63,7 @@ class Kernel:
     inside: bool = False
     source: str = ""
     arguments: tuple[Expr, ...] = ()
+    tilt: Tilt | None = None
 
 
 @dataclass(frozen=True)

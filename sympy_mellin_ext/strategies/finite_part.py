@@ -78,7 +78,7 @@ def edge(pieces: Sequence[Piece], end: int, facts: Facts) -> Edge | None:
 
 
 def _survives(exponent: Expr, pieces: list[Piece], end: int) -> bool:
-    if len(pieces) == 1 and pieces[0].wave is None and not pieces[0].dirichlet:
+    if len(pieces) == 1 and pieces[0].wave is None and pieces[0].tilt is None and not pieces[0].dirichlet:
         return True
     totals: list[list[Expr]] = []
     for piece in pieces:

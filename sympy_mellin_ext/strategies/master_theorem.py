@@ -8,6 +8,7 @@ D. Kaminski, Asymptotics and Mellin-Barnes Integrals (2001), ch. 2-3.
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import replace
 
 from sympy import Eq, Expr, Max, Min, S, Symbol, oo
 from sympy.core.sorting import default_sort_key
@@ -19,6 +20,7 @@ from ..pieces import Piece
 from ..problem import Problem
 from ..region import Region, real_part
 from .finite_part import Edge, converge, total_value
+from .registry import attempt
 
 _SUM_SOURCE = "D. Zagier, The Mellin transform and related analytic techniques (2006), section 1"
 _THEOREM_SOURCE = "Hardy, Ramanujan: Twelve Lectures (1940), ch. XI"
@@ -39,7 +41,30 @@ class MasterTheorem:
             return ClosedForm(S.Zero, strategy=self.name)
         if any(len(t.kernels) > 1 for t in terms):
             return problem.refuse("too many kernels", "a term has more than one kernel")
-        return closed_form_of_terms(problem, terms, self.name)
+        answer = closed_form_of_terms(problem, terms, self.name)
+        return None if answer is None else _with_collisions(problem, terms, answer)
+
+
+def _with_collisions(problem: Problem, terms: Sequence[Term], answer: ClosedForm) -> ClosedForm:
+    """Add the values where two roots of a denominator meet, so that partial fractions read oo - oo."""
+    scales = dict.fromkeys(k.product.scale for t in terms for k in t.kernels if k.name == "power")
+    free = [s for s in scales if s.free_symbols]
+    special = list(answer.special)
+    for i, first in enumerate(free):
+        for second in free[:i]:
+            for symbol in sorted(first.free_symbols | second.free_symbols, key=default_sort_key, reverse=True):
+                gap = (1 / first - 1 / second).expand()
+                slope = gap.diff(symbol)
+                if slope.has(symbol) or slope.is_zero:
+                    continue
+                point = (symbol - gap / slope).expand()
+                if point.has(symbol) or not answer.value.subs(symbol, point).has(S.NaN, S.ComplexInfinity):
+                    break
+                met = attempt(problem.changed(problem.integrand.subs(symbol, point)))
+                if met is not None and met.special == ():
+                    special.append((Eq(symbol, point), met.value))
+                break
+    return replace(answer, special=tuple(special)) if len(special) > len(answer.special) else answer
 
 
 def closed_form_of_terms(problem: Problem, terms: Sequence[Term], name: str) -> ClosedForm | None:
@@ -106,8 +131,9 @@ def _special_values(
             if inside == False:  # noqa: E712 - SymPy Boolean
                 break
             value = total_value([piece.subs(symbol, point) for piece in pieces])
-            if not value.has(S.NaN, S.ComplexInfinity):
-                special.append((Eq(symbol, point), value))
+            where = Eq(symbol, point)
+            if where is not S.false and not value.has(S.NaN, S.ComplexInfinity):
+                special.append((where, value))
             break
     return tuple(special)
 
