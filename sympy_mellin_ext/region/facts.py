@@ -7,7 +7,7 @@ from sympy.logic.boolalg import Boolean
 
 from . import signs
 from .atoms import bounds, enclosure, mask_of_function, mask_of_number, mask_of_power, tightened
-from .form import ONE, Form, Known, Monomial, constant, form_of, monomial, primitive, scaled, times
+from .form import ONE, Form, Known, Monomial, add_to, constant, form_of, monomial, primitive, scaled, times
 from .judge import Judge, mask_nonnegative, mask_positive, relations_of
 from .linear import System
 from .reduce import divided, split
@@ -215,6 +215,12 @@ class Facts(Judge):
         """The expression as a linear form over monomials, in the light of what is known."""
         return form_of(expr, self._rewritten)
 
+    def difference(self, left: Expr, right: Expr) -> Form:
+        """left - right as a form, without making the expression."""
+        form = self.form(left)
+        add_to(form, self.form(right), -1)
+        return form
+
     def _rewritten(self, atom: Expr) -> Expr | None:
         if isinstance(atom, Abs):
             mask = self.mask(atom.args[0])
@@ -329,13 +335,13 @@ class Facts(Judge):
         unequal: list[Form] = []
         for relation in relations:
             if isinstance(relation, (Eq, Ne)):
-                form = self.form(relation.lhs - relation.rhs)
+                form = self.difference(relation.lhs, relation.rhs)
                 if isinstance(relation, Ne):
                     unequal.append(form)
                 elif form:
                     rows += [(form, False), (scaled(form, -1), False)]
             else:
-                pieces = split(self.form(relation.gts - relation.lts), self)
+                pieces = split(self.difference(relation.gts, relation.lts), self)
                 rows += [(piece, isinstance(relation, (Gt, Lt))) for piece in pieces]
         # What speaks of one atom alone goes first: signs of atoms decide how the others are divided.
         simple = [row for row in rows if len(row[0].keys() - {ONE}) == 1]
@@ -394,7 +400,7 @@ def real_part(expr: Expr, facts: Facts | None = None) -> Expr:
     if expr.is_Rational or facts.real(expr):
         return expr
     if expr.is_Symbol:
-        return Integer(0) if expr.is_imaginary else re(expr, evaluate=False)
+        return Integer(0) if expr.assumptions0.get("imaginary") else re(expr, evaluate=False)
     if expr.is_Add:
         return expr.func(*[real_part(term, facts) for term in expr.args])
     if expr is I:

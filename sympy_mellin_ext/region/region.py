@@ -17,8 +17,6 @@ from .reduce import divided, split, strict
 from .relation import merged, relation_of, row_key, sides
 from .signs import NEGATIVE, NOT_REAL, POSITIVE, ZERO, negated
 
-_INFINITIES = (S.Infinity, S.NegativeInfinity)
-
 
 class Region(Judge):
     """A conjunction of polynomial inequalities and other Booleans, over what the facts say. Immutable.
@@ -115,14 +113,15 @@ class Region(Judge):
 
     def _restrict(self, expr: Expr, strictly: bool, rows: list[Known], others: list[Boolean]) -> None:
         """expr > 0, or expr >= 0."""
-        facts = self.facts
-        infinite = [term for term in (expr.args if expr.is_Add else (expr,)) if term in _INFINITIES]
-        if expr in (S.NaN, S.ComplexInfinity) or len(set(infinite)) == 2:
+        terms = expr.args if expr.is_Add else (expr,)
+        if expr is S.NaN or expr is S.ComplexInfinity:
             raise ValueError(f"{expr} has no sign")
-        if infinite:
-            if infinite[0] is S.NegativeInfinity:
-                rows.append(FALSE)
+        if any(term is S.NegativeInfinity for term in terms):
+            rows.append(FALSE)
             return
+        if any(term is S.Infinity for term in terms):
+            return
+        facts = self.facts
         sign = 1
         if expr.is_Mul:
             unknown: list[Expr] = []
