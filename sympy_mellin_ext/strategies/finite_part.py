@@ -15,6 +15,7 @@ from sympy import Add, Expr, S, bernoulli, factorial, log
 
 from ..gamma.laurent import Series, exponential, linear_series, multiply
 from ..gamma.shortest import collect_powers, positive_power
+from ..gamma.sums import shortest_sum
 from ..pieces import Piece
 from ..region import Facts, Region, real_part
 
@@ -173,4 +174,4 @@ def total_value(pieces: Sequence[Piece]) -> Expr:
     total = Add(*(piece.value() for piece in pieces))
     if any(piece.logs or piece.product is None or piece.pole_order(piece.u) for piece in pieces):
         total = total.expand(log=False, power_base=False, power_exp=False, trig=False)
-    return collect_powers(total)
+    return shortest_sum(collect_powers(total))

@@ -15,6 +15,7 @@ from sympy.core.sorting import default_sort_key
 from sympy.logic.boolalg import Boolean
 
 from ..closed_form import ClosedForm, Step
+from ..gamma.shortest import positive_power
 from ..matching import Term, read_terms
 from ..pieces import Piece
 from ..problem import Problem
@@ -47,13 +48,18 @@ class MasterTheorem:
 
 def _with_collisions(problem: Problem, terms: Sequence[Term], answer: ClosedForm) -> ClosedForm:
     """Add the values where two roots of a denominator meet, so that partial fractions read oo - oo."""
-    scales = dict.fromkeys(k.product.scale for t in terms for k in t.kernels if k.name == "power")
-    free = [s for s in scales if s.free_symbols]
+    roots = list(
+        dict.fromkeys(
+            positive_power(k.product.scale, -1 / k.ratio) for t in terms for k in t.kernels if k.name == "power"
+        )
+    )
+    if not any(root.free_symbols for root in roots):
+        return answer
     special = list(answer.special)
-    for i, first in enumerate(free):
-        for second in free[:i]:
+    for i, first in enumerate(roots):
+        for second in roots[:i]:
             for symbol in sorted(first.free_symbols | second.free_symbols, key=default_sort_key, reverse=True):
-                gap = (1 / first - 1 / second).expand()
+                gap = (first - second).expand()
                 slope = gap.diff(symbol)
                 if slope.has(symbol) or slope.is_zero:
                     continue

@@ -1,0 +1,90 @@
+"""Sums of closed forms written shorter: logarithms joined, common factors taken out."""
+from __future__ import annotations
+
+from sympy import Add, Expr, Mul, Pow, S, cancel, count_ops, factor, factor_terms, log
+
+# Larger sums are left as they are: the gain would not pay for the search.
+_MOST_TERMS = 12
+
+
+def shortest_sum(total: Expr) -> Expr:
+    """The shortest of a few equal forms of a sum.
+
+    Examples
+    --------
+    >>> from sympy import log, symbols
+    >>> from sympy_mellin_ext.gamma.sums import shortest_sum
+    >>> a, b = symbols('a b', positive=True)
+    >>> shortest_sum(-log(b)/(a - b) - log(a)/(b - a))
+    log(a/b)/(a - b)
+    """
+    if not total.is_Add or len(total.args) > _MOST_TERMS:
+        return total
+    total = Add(*(_same_signs(t) for t in total.args))
+    candidates = [total]
+    joined = _join_logarithms(total)
+    if joined is not total:
+        candidates.append(joined)
+    if total.is_Add:
+        symbols = sorted(total.free_symbols, key=str)
+        if symbols and total.is_rational_function(*symbols):
+            candidates.append(factor(cancel(total)))
+        else:
+            candidates.append(factor_terms(joined, sign=True))
+    return min(candidates, key=count_ops)
+
+
+def _same_signs(term: Expr) -> Expr:
+    """Sums inside a product with their leading sign out: ``1/(b - a) -> -1/(a - b)``."""
+    factors, flip = [], False
+    for f in Mul.make_args(term):
+        base, exponent = f.as_base_exp()
+        if base.is_Add and exponent.is_Integer and base.could_extract_minus_sign():
+            flip = flip != bool(exponent % 2)
+            f = Pow(-base, exponent)
+        factors.append(f)
+    return Mul(S.NegativeOne, *factors) if flip else Mul(*factors)
+
+
+def _join_logarithms(total: Expr) -> Expr:
+    """``c*log(p) - c*log(q) = c*log(p/q)`` for positive p and q."""
+    weights: dict[Expr, list[Expr]] = {}
+    rest: list[Expr] = []
+    for term in total.args:
+        logs = [f for f in Mul.make_args(term) if isinstance(f, log) and f.args[0].is_positive]
+        if len(logs) != 1:
+            rest.append(term)
+            continue
+        weight = Mul(*(f for f in Mul.make_args(term) if f is not logs[0]))
+        weights.setdefault(weight, []).append(logs[0].args[0])
+    if len(weights) + len(rest) == len(total.args) and not any(-w in weights for w in weights):
+        halves = _halved(weights)
+        return Add(*rest, *halves) if halves is not None else total
+    joined: list[Expr] = []
+    done: set[Expr] = set()
+    for weight, arguments in weights.items():
+        if weight in done:
+            continue
+        below = weights.get(-weight, [])
+        done.update((weight, -weight))
+        if weight.could_extract_minus_sign() and below:
+            weight, arguments, below = -weight, below, arguments
+        joined.append(weight * log(Mul(*arguments, *(1 / p for p in below))))
+    return Add(*rest, *joined)
+
+
+def _halved(weights: dict[Expr, list[Expr]]) -> list[Expr] | None:
+    """``c*log(p)/2 - c*log(q) = c/2*log(p/q**2)``, for two weights with ratio -2 or -1/2."""
+    if len(weights) != 2:
+        return None
+    (v, (p, *more)), (w, (q, *others)) = weights.items()
+    if more or others:
+        return None
+    if v == -2 * w:
+        (v, p), (w, q) = (w, q), (v, p)
+    if w != -2 * v:
+        return None
+    return [v * log((p / q**2).expand())]
+
+
+__all__ = ["shortest_sum"]
