@@ -10,7 +10,7 @@ from dataclasses import dataclass
 from typing import NamedTuple
 
 from sympy import (
-    Add, Expr, Integer, Mul, Poly, PolynomialError, Pow, Rational, S, Symbol, bernoulli, beta, binomial,
+    Add, Expr, Integer, Mul, Poly, PolynomialError, Pow, S, Symbol, bernoulli, beta, binomial,
     catalan, cos, dirichlet_eta, exp, factorial, factorial2, ff, gamma, harmonic, log, polygamma, polylog, rf,
     sin, sqrt, together, zeta,
 )
@@ -385,9 +385,3 @@ def term_ratio(c: Expr, n: Symbol) -> Expr | None:
         ratio = Mul(*(start + j for j in rungs))
         parts.append(Pow(ratio, Integer(power if slope > 0 else -power)))
     return Mul(*parts)
-
-
-def rational_angle(angle: Expr) -> Rational | None:
-    """``angle/pi`` if it is a rational number."""
-    quotient = angle / S.Pi
-    return quotient if quotient.is_Rational else None

@@ -9,7 +9,7 @@ from collections.abc import Callable, Iterable
 from dataclasses import dataclass
 from typing import NamedTuple
 
-from sympy import Abs, Add, Expr, Mul, Pow, Rational, S, Symbol, arg, gamma
+from sympy import Abs, Add, Expr, Mul, Pow, S, Symbol, arg, gamma
 
 from ..gamma import Factor, GammaProduct
 from ..gamma.product import cancel
@@ -137,7 +137,11 @@ def _transform(form: CoefficientForm, n: Symbol, scale: Expr, lead: tuple[Factor
     whole = (Factor(S.Zero, one, 1), *(f for f in lead[1:]), *(Factor(a, -A, e) for a, A, e in form.factors))
     growth = growth_ok(factors, angle_of(scale), type_, sign, n)
     if growth.ok is False:
-        growth = growth._replace(culprit=growth_ok(whole, angle_of(scale), type_, sign, n).culprit)
+        if growth_ok(factors, S.Zero, type_, sign).ok:
+            culprit: Expr | None = Pow(scale, n)
+        else:
+            culprit = growth_ok(whole, angle_of(scale), type_, sign, n).culprit
+        growth = growth._replace(culprit=culprit)
     return SeriesTransform(product, form.extras, growth)
 
 
@@ -193,7 +197,3 @@ def coefficient_transform(c: Expr, n: Symbol, sign: Sign = assumed_sign) -> Seri
 
 def _negative(base: Expr) -> Expr:
     return -base if not base.is_Add else (-base).expand()
-
-
-def rational(value: Expr) -> Rational:
-    return Rational(value)

@@ -1,0 +1,196 @@
+"""Two-term recurrences of an element of a differential tower: ``A(theta) f + x**m B(theta) f = 0``.
+
+With ``theta = x*d/dx`` such an equation says ``A(n+m)*c(n+m) = -B(n)*c(n)`` for a power series and
+``A(-s)*F(s) + B(-s-m)*F(s+m) = 0`` for a Mellin transform.  Equations of higher order than the minimal one
+count too: ``exp(-x)*sin(x)`` has order 2, its two-term equation order 4.
+
+Source: W. Koepf, Power series in computer algebra, J. Symb. Comp. 13 (1992), sections 2-4 (equations of
+hypergeometric type); the search by undetermined coefficients is common practice.
+"""
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+from sympy import Expr, Poly, S, Symbol, sqrt
+from sympy.polys.matrices import DomainMatrix
+from sympy.polys.rings import PolyElement
+
+from .tower import Element, Tower
+
+_HIGHEST_ORDER = 4
+_LONGEST_STEP = 6
+_MOST_MONOMIALS = 12
+_HIGHEST_DEGREE = 24
+# A prime below 2**31; the search runs modulo it at random parameters before anything exact is solved.
+_PRIME = 2147483629
+_PARAMETERS = (104729, 1299709, 15485863, 32452843)
+
+
+@dataclass(frozen=True)
+class Recurrence:
+    """``A(theta) f + x**step * B(theta) f = 0`` with the roots of A and B (with multiplicity).
+
+    ``ratio`` is the quotient of the leading coefficients of A and B.
+    """
+
+    step: int
+    left: tuple[Expr, ...]
+    right: tuple[Expr, ...]
+    ratio: Expr
+    equation: Expr
+
+
+def two_term(tower: Tower, f: Element, theta: Symbol) -> Recurrence | None:
+    """The two-term equation of lowest order up to 4 and step up to 6, or None."""
+    derivatives = [f]
+    for order in range(1, _HIGHEST_ORDER + 1):
+        derivative = tower.derive(derivatives[-1])
+        derivatives.append({m: tower.X * c for m, c in derivative.items()})
+        if len({m for v in derivatives for m in v}) > _MOST_MONOMIALS:
+            return None
+        rows = _rows(derivatives)
+        if rows is None:
+            return None
+        numeric = [[_modular(c, tower) for c in row] for row in rows]
+        for step in range(1, _LONGEST_STEP + 1):
+            pivots = _dependent(_matrix(rows, numeric, step))
+            if pivots is not None:
+                return _solved(tower, rows, step, pivots, theta)
+    return None
+
+
+def _rows(derivatives: Sequence[Element]) -> list[list[dict[int, PolyElement]]] | None:
+    """For each monomial: numerators over a common denominator, by powers of ``x``, one a derivative."""
+    rows = []
+    for monomial in sorted({m for v in derivatives for m in v}):
+        entries = [v.get(monomial) for v in derivatives]
+        common = None
+        for c in entries:
+            if c is not None:
+                common = c.denom if common is None else common.lcm(c.denom)
+        row = []
+        for c in entries:
+            split: dict[int, PolyElement] = {}
+            if c is not None:
+                numerator = c.numer * common.exquo(c.denom)
+                for exponents, coefficient in numerator.terms():
+                    if exponents[0] > _HIGHEST_DEGREE:
+                        return None
+                    rest = numerator.ring({(0, *exponents[1:]): coefficient})
+                    split[exponents[0]] = split.get(exponents[0], numerator.ring.zero) + rest
+            row.append(split)
+        rows.append(row)
+    return rows
+
+
+def _modular(split: dict[int, PolyElement], tower: Tower) -> dict[int, int]:
+    result = {}
+    for power, polynomial in split.items():
+        total = 0
+        for exponents, c in polynomial.terms():
+            value = int(c.numerator) * pow(int(c.denominator), -1, _PRIME)
+            for base, e in zip(_PARAMETERS, exponents[1:], strict=False):
+                value = value * pow(base, e, _PRIME) % _PRIME
+            total += value
+        result[power] = total % _PRIME
+    return result
+
+
+def _positions(rows: list, step: int) -> list[tuple[int, int]]:
+    """The equations: a monomial and a power of ``x`` each."""
+    return [
+        (i, power)
+        for i, row in enumerate(rows)
+        for power in sorted({p for split in row for p in split} | {p + step for split in row for p in split})
+    ]
+
+
+def _matrix(rows: list, numeric: list, step: int) -> list[list[int]]:
+    matrix = []
+    for i, power in _positions(rows, step):
+        row = numeric[i]
+        matrix.append([s.get(power, 0) for s in row] + [s.get(power - step, 0) for s in row])
+    return matrix
+
+
+def _dependent(matrix: list[list[int]]) -> list[int] | None:
+    """Row numbers of a maximal independent set if the null space is one line, else None."""
+    size = len(matrix[0])
+    echelon: dict[int, list[int]] = {}
+    chosen = []
+    for number, source in enumerate(matrix):
+        row = source[:]
+        for column in sorted(echelon):
+            if row[column]:
+                factor, pivot = row[column], echelon[column]
+                row = [(a - factor * b) % _PRIME for a, b in zip(row, pivot, strict=True)]
+        lead = next((j for j, a in enumerate(row) if a), None)
+        if lead is None:
+            continue
+        scale = pow(row[lead], -1, _PRIME)
+        echelon[lead] = [a * scale % _PRIME for a in row]
+        chosen.append(number)
+        if len(chosen) == size:
+            return None
+    return chosen if len(chosen) == size - 1 else None
+
+
+def _solved(tower: Tower, rows: list, step: int, pivots: list[int], theta: Symbol) -> Recurrence | None:
+    """The null vector over Q(parameters) from the independent rows, checked on all the others."""
+    ring = tower.K.ring
+    domain = tower.K.to_domain()
+
+    def exact(position: tuple[int, int]) -> list[PolyElement]:
+        i, power = position
+        row = rows[i]
+        zero = ring.zero
+        return [s.get(power, zero) for s in row] + [s.get(power - step, zero) for s in row]
+
+    positions = _positions(rows, step)
+    chosen = [[tower.K(c) for c in exact(positions[p])] for p in pivots]
+    size = len(chosen[0])
+    null = DomainMatrix(chosen, (len(chosen), size), domain).nullspace().to_Matrix().tolist()
+    if len(null) != 1:
+        return None
+    vector = [tower.K.from_expr(v) for v in null[0]]
+    for number, position in enumerate(positions):
+        if number not in pivots:
+            total = tower.K.zero
+            for v, c in zip(vector, exact(position), strict=True):
+                if v and c:
+                    total += v * c
+            if total:
+                return None
+    half = size // 2
+    a = sum((tower.to_expr(c) * theta**i for i, c in enumerate(vector[:half]) if c), S.Zero)
+    b = sum((tower.to_expr(c) * theta**i for i, c in enumerate(vector[half:]) if c), S.Zero)
+    if a is S.Zero or b is S.Zero:
+        return None
+    left, right = linear_roots(a, theta), linear_roots(b, theta)
+    if left is None or right is None:
+        return None
+    ratio = (left[0] / right[0]).cancel() if not left[0].is_Number or not right[0].is_Number else left[0] / right[0]
+    return Recurrence(step, left[1], right[1], ratio, a + Symbol(tower.x.name) ** step * b)
+
+
+def linear_roots(a: Expr, theta: Symbol) -> tuple[Expr, tuple[Expr, ...]] | None:
+    """Leading coefficient and roots of a polynomial that splits into linear and quadratic factors."""
+    content, parts = Poly(a, theta).factor_list()
+    lead, roots = content, []
+    for part, multiplicity in parts:
+        coefficients = part.all_coeffs()
+        lead = lead * coefficients[0] ** multiplicity
+        if part.degree() == 1:
+            roots += [_tidy(-coefficients[1] / coefficients[0])] * multiplicity
+        elif part.degree() == 2:
+            p, q, r = coefficients
+            middle, gap = -q / (2 * p), sqrt(_tidy((q**2 - 4 * p * r) / (4 * p**2)))
+            roots += [_tidy(middle + gap), _tidy(middle - gap)] * multiplicity
+        else:
+            return None
+    return lead, tuple(sorted(roots, key=str))
+
+
+def _tidy(value: Expr) -> Expr:
+    return value if value.is_Number or value.is_Symbol else value.expand()
