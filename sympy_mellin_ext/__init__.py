@@ -2,7 +2,8 @@
 from .closed_form import ClosedForm
 from .integrate import closed_form, integrate, mellin
 from .problem import Refusal
+from .theorem import master_theorem
 
 __version__ = "0.1.0"
 
-__all__ = ["ClosedForm", "Refusal", "closed_form", "integrate", "mellin"]
+__all__ = ["ClosedForm", "Refusal", "closed_form", "integrate", "master_theorem", "mellin"]

@@ -1,15 +1,13 @@
 """The public calls: a drop-in ``integrate``, ``closed_form`` without a fallback, and the transform itself."""
 from __future__ import annotations
 
-from collections.abc import Iterable
 from dataclasses import replace
 from typing import Any
 
 import sympy
 from sympy import Expr, Symbol, Tuple, sympify
-from sympy.core.relational import Relational
-from sympy.logic.boolalg import Boolean, BooleanAtom
 
+from .arguments import Given, expression, relations, symbol
 from .closed_form import ClosedForm
 from .problem import Diagnosis, Problem, Refusal
 from .region import Facts
@@ -18,7 +16,6 @@ from .strategies import attempt
 # Any of these, forced by the caller, asks for one of SymPy's own methods.
 _STOCK_METHODS = ("meijerg", "risch", "heurisch", "manual")
 
-Given = Boolean | Iterable[Boolean]
 
 
 def integrate(f: Any, *limits: Any, given: Given = (), **hints: Any) -> Any:
@@ -69,7 +66,7 @@ def _answer(f: Any, limits: tuple[Any, ...], given: Given) -> ClosedForm | None:
     integral = _read(f, limits)
     if integral is None:
         return None
-    facts = Facts(_relations(given))
+    facts = Facts(relations(given))
     return _solve(*integral, facts, None)
 
 
@@ -97,14 +94,6 @@ def _solve(
     if answer is None:
         return None
     return replace(answer, integrand=f, limits=((x, lower, upper),), given=facts.given)
-
-
-def _relations(given: Given) -> tuple[Boolean, ...]:
-    items = (given,) if isinstance(given, (Boolean, bool)) else tuple(given)
-    for item in items:
-        if not isinstance(item, (Relational, Boolean, BooleanAtom, bool)):
-            raise TypeError(f"given takes a relation such as a > b or a list of them, not {item!r}")
-    return tuple(sympify(item) for item in items)
 
 
 def closed_form(f: Any, *limits: Any, given: Given = (), strict: bool = False) -> ClosedForm | None:
@@ -140,7 +129,7 @@ def closed_form(f: Any, *limits: Any, given: Given = (), strict: bool = False) -
     ...     print(refusal.reason)
     diverges
     """
-    f = _expression(f, "f")
+    f = expression(f, "f")
     if len(limits) != 1:
         raise ValueError(f"limits must be one tuple (x, lower, upper), not {len(limits)} arguments")
     integral = _read(f, limits)
@@ -151,7 +140,7 @@ def closed_form(f: Any, *limits: Any, given: Given = (), strict: bool = False) -
             return _refused(Refusal("no kernel", f"the integrand does not depend on {limits[0][0]}"), strict)
         raise ValueError(f"limits must be a tuple (x, lower, upper) with a Symbol x, not {limits[0]!r}")
     diagnosis = Diagnosis() if strict else None
-    answer = _solve(*integral, Facts(_relations(given)), diagnosis)
+    answer = _solve(*integral, Facts(relations(given)), diagnosis)
     if answer is None and diagnosis is not None:
         raise diagnosis.refusal()
     return answer
@@ -160,15 +149,6 @@ def closed_form(f: Any, *limits: Any, given: Given = (), strict: bool = False) -
 def _refused(refusal: Refusal, strict: bool) -> None:
     if strict:
         raise refusal
-
-
-def _expression(f: Any, name: str) -> Expr:
-    if isinstance(f, str):
-        raise TypeError(f"{name} must be a SymPy expression, not the string {f!r}")
-    f = sympify(f)
-    if not isinstance(f, Expr):
-        raise TypeError(f"{name} must be a SymPy expression, not {type(f).__name__}")
-    return f
 
 
 def mellin(f: Any, x: Symbol, s: Symbol, given: Given = (), strict: bool = False) -> ClosedForm | None:
@@ -193,15 +173,13 @@ def mellin(f: Any, x: Symbol, s: Symbol, given: Given = (), strict: bool = False
     >>> answer.strip
     (-1, 1)
     """
-    f = _expression(f, "f")
-    for symbol, name in ((x, "x"), (s, "s")):
-        if not isinstance(symbol, Symbol):
-            raise TypeError(f"{name} must be a Symbol, not {symbol!r}")
+    f = expression(f, "f")
+    symbol(x, "x"), symbol(s, "s")
     if x == s or f.has_free(s):
         raise ValueError(f"s = {s} must differ from the variable and must not occur in f")
     diagnosis = Diagnosis() if strict else None
     integrand = x ** (s - 1) * f
-    answer = _solve(integrand, x, sympy.S.Zero, sympy.oo, Facts(_relations(given)), diagnosis, s - 1)
+    answer = _solve(integrand, x, sympy.S.Zero, sympy.oo, Facts(relations(given)), diagnosis, s - 1)
     if answer is None and diagnosis is not None:
         raise diagnosis.refusal()
     return answer

@@ -175,8 +175,10 @@ class Piece:
             return Growth()
         lam, delta = self.product.lam, self.product.delta
         angle = abs(self.wave.angle) if self.wave is not None else S.Zero
-        if self.inside and (self.wave is not None or lam > 0):
-            return Growth(self.condition) if lam > 0 else None
+        if self.inside and not lam.is_nonpositive:
+            return Growth(self.condition, None if lam.is_positive else lam)
+        if self.inside and self.wave is not None:
+            return None
         excess = angle - pi * lam / 2
         if excess.is_negative:
             return Growth(self.condition)

@@ -106,7 +106,7 @@ def closed_form_of_pieces(
     return ClosedForm(
         value,
         condition,
-        _strip(at_zero, at_infinity, problem.reference or pieces[0].power),
+        strip_of(at_zero, at_infinity, problem.reference or pieces[0].power),
         name,
         (*steps, Step("finite parts added" if several else "master theorem", _SUM_SOURCE if several else _THEOREM_SOURCE, value)),
         (*sources, _SUM_SOURCE if several else _THEOREM_SOURCE),
@@ -114,7 +114,7 @@ def closed_form_of_pieces(
     )
 
 
-def _strip(at_zero: Edge, at_infinity: Edge, reference: Expr) -> tuple[Expr, Expr]:
+def strip_of(at_zero: Edge, at_infinity: Edge, reference: Expr) -> tuple[Expr, Expr]:
     """Bounds of Re s for the transform of the integrand without ``x**reference``, ``reference = s - 1``."""
     lower = [real_part(reference - e) for e in at_zero.survivors]
     upper = [real_part(reference - e) for e in at_infinity.survivors]
