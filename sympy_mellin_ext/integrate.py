@@ -5,7 +5,7 @@ from dataclasses import replace
 from typing import Any
 
 import sympy
-from sympy import Expr, Symbol, Tuple, sympify
+from sympy import Expr, S, Symbol, Tuple, sympify
 
 from .arguments import Given, expression, relations, symbol
 from .closed_form import ClosedForm
@@ -47,7 +47,10 @@ def integrate(f: Any, *limits: Any, given: Given = (), **hints: Any) -> Any:
     if len(limits) == 1 and not any(hints.get(name) for name in _STOCK_METHODS):
         conds = hints.get("conds", "piecewise")
         if conds in ("piecewise", "separate", "none") and _only_known(hints):
-            answer = _answer(f, limits, given)
+            diagnosis = Diagnosis()
+            answer = _answer(f, limits, given, diagnosis)
+            if answer is None and diagnosis.divergent:
+                return _divergent(sympy.integrate(f, *limits, **hints), f, limits)
             if answer is not None:
                 if conds == "piecewise":
                     return answer.as_piecewise()
@@ -57,17 +60,24 @@ def integrate(f: Any, *limits: Any, given: Given = (), **hints: Any) -> Any:
     return sympy.integrate(f, *limits, **hints)
 
 
+def _divergent(stock: Any, f: Expr, limits: tuple[Any, ...]) -> Any:
+    """What SymPy says of an integral that we know to diverge, unless it is a finite value."""
+    if isinstance(stock, Expr) and (stock.is_infinite or stock is S.NaN or isinstance(stock, sympy.Integral)):
+        return stock
+    return sympy.Integral(f, *limits)
+
+
 def _only_known(hints: dict[str, Any]) -> bool:
     return all(name == "conds" or name in _STOCK_METHODS for name in hints)
 
 
-def _answer(f: Any, limits: tuple[Any, ...], given: Given) -> ClosedForm | None:
+def _answer(f: Any, limits: tuple[Any, ...], given: Given, diagnosis: Diagnosis) -> ClosedForm | None:
     """Our closed form, or None; what is malformed is left to SymPy, which raises its own exceptions."""
     integral = _read(f, limits)
     if integral is None:
         return None
     facts = Facts(relations(given))
-    return _solve(*integral, facts, None)
+    return _solve(*integral, facts, diagnosis)
 
 
 def _read(f: Any, limits: tuple[Any, ...]) -> tuple[Expr, Symbol, Expr, Expr] | None:
@@ -88,9 +98,10 @@ def _read(f: Any, limits: tuple[Any, ...]) -> tuple[Expr, Symbol, Expr, Expr] | 
 
 
 def _solve(
-    f: Expr, x: Symbol, lower: Expr, upper: Expr, facts: Facts, diagnosis: Diagnosis | None, reference: Expr | None = None
-) -> ClosedForm | None:
-    answer = attempt(Problem(f, x, lower, upper, facts, diagnosis, 0, reference))
+    f: Expr, x: Symbol, lower: Expr, upper: Expr, facts: Facts, diagnosis: Diagnosis | None,
+    reference: Expr | None = None, principal: bool = False,
+) -> ClosedForm | None:  # fmt: skip
+    answer = attempt(Problem(f, x, lower, upper, facts, diagnosis, 0, reference, principal))
     if answer is None:
         return None
     return replace(answer, integrand=f, limits=((x, lower, upper),), given=facts.given)
@@ -129,16 +140,7 @@ def closed_form(f: Any, *limits: Any, given: Given = (), strict: bool = False) -
     ...     print(refusal.reason)
     diverges
     """
-    f = expression(f, "f")
-    if len(limits) != 1:
-        raise ValueError(f"limits must be one tuple (x, lower, upper), not {len(limits)} arguments")
-    integral = _read(f, limits)
-    if integral is None:
-        if not f.free_symbols and isinstance(limits[0], (tuple, list, Tuple)) and len(limits[0]) == 3:
-            return _refused(Refusal("no kernel", "the integrand has no variable"), strict)
-        if isinstance(limits[0], (tuple, list, Tuple)) and len(limits[0]) == 3 and isinstance(limits[0][0], Symbol):
-            return _refused(Refusal("no kernel", f"the integrand does not depend on {limits[0][0]}"), strict)
-        raise ValueError(f"limits must be a tuple (x, lower, upper) with a Symbol x, not {limits[0]!r}")
+    integral = _checked(f, limits)
     diagnosis = Diagnosis() if strict else None
     answer = _solve(*integral, Facts(relations(given)), diagnosis)
     if answer is None and diagnosis is not None:
@@ -146,9 +148,46 @@ def closed_form(f: Any, *limits: Any, given: Given = (), strict: bool = False) -
     return answer
 
 
-def _refused(refusal: Refusal, strict: bool) -> None:
-    if strict:
-        raise refusal
+def _checked(f: Any, limits: tuple[Any, ...]) -> tuple[Expr, Symbol, Expr, Expr]:
+    """The integrand and the limits, or an error that names the argument and what is accepted."""
+    f = expression(f, "f")
+    if len(limits) != 1:
+        raise ValueError(f"limits must be one tuple (x, lower, upper), not {len(limits)} arguments")
+    (limit,) = limits
+    if not isinstance(limit, (tuple, list, Tuple)) or len(limit) != 3:
+        raise ValueError(f"limits must be a tuple (x, lower, upper), not {limit!r}")
+    x = symbol(limit[0], "the variable in limits")
+    return f, x, expression(limit[1], "lower"), expression(limit[2], "upper")
+
+
+def principal_value(f: Any, *limits: Any, given: Given = (), strict: bool = False) -> ClosedForm | None:
+    """Cauchy's principal value of an integral with simple poles on its range; `integrate` never gives one.
+
+    Parameters and errors are those of :func:`closed_form`.
+
+    Examples
+    --------
+    >>> from sympy import oo, symbols
+    >>> from sympy_mellin_ext import closed_form, principal_value
+    >>> x, a = symbols('x a', positive=True)
+    >>> print(closed_form(x/(x**3 - a**3), (x, 0, oo)))
+    None
+    >>> principal_value(x/(x**3 - a**3), (x, 0, oo)).value
+    sqrt(3)*pi/(9*a)
+    """
+    f, x, lower, upper = _checked(f, limits)
+    diagnosis = Diagnosis() if strict else None
+    facts = Facts(relations(given))
+    if lower == -upper and upper != 0:
+        # the poles at +-p fold onto one another, and the even part carries the whole value
+        answer = _solve(f + f.subs(x, -x), x, S.Zero, upper, facts, diagnosis, None, True)
+    else:
+        answer = _solve(f, x, lower, upper, facts, diagnosis, None, True)
+    if answer is None:
+        if diagnosis is not None:
+            raise diagnosis.refusal()
+        return None
+    return replace(answer, integrand=f, limits=((x, lower, upper),), strategy=f"principal value, {answer.strategy}")
 
 
 def mellin(f: Any, x: Symbol, s: Symbol, given: Given = (), strict: bool = False) -> ClosedForm | None:
@@ -179,7 +218,7 @@ def mellin(f: Any, x: Symbol, s: Symbol, given: Given = (), strict: bool = False
         raise ValueError(f"s = {s} must differ from the variable and must not occur in f")
     diagnosis = Diagnosis() if strict else None
     integrand = x ** (s - 1) * f
-    answer = _solve(integrand, x, sympy.S.Zero, sympy.oo, Facts(relations(given)), diagnosis, s - 1)
+    answer = _solve(integrand, x, S.Zero, sympy.oo, Facts(relations(given)), diagnosis, s - 1)
     if answer is None and diagnosis is not None:
         raise diagnosis.refusal()
     return answer

@@ -35,6 +35,7 @@ class Diagnosis:
 
     def __init__(self) -> None:
         self.findings: list[Refusal] = []
+        self.divergent = False  # shown for the question as it was asked
 
     def refusal(self) -> Refusal:
         """The most telling finding: a later strategy that got further outranks 'no kernel'."""
@@ -59,6 +60,8 @@ class Problem:
         How many strategies have handed a changed problem on; bounded, so that none runs in circles.
     reference : Expr or None
         The exponent ``s - 1`` that counts as the variable of the transform when a strip is stated.
+    principal : bool
+        Whether simple poles on the range are taken in the sense of Cauchy's principal value.
     """
 
     integrand: Expr
@@ -69,6 +72,7 @@ class Problem:
     diagnosis: Diagnosis | None = None
     depth: int = 0
     reference: Expr | None = None
+    principal: bool = False
 
     @property
     def half_line(self) -> bool:
@@ -79,6 +83,12 @@ class Problem:
         """Note why a strategy refuses; returns None so that it can be returned."""
         if self.diagnosis is not None:
             self.diagnosis.findings.append(Refusal(reason, detail))
+
+    def diverges(self, detail: str) -> None:
+        """Note that the integral is shown to diverge, for every value of the parameters."""
+        if self.diagnosis is not None and self.depth == 0:
+            self.diagnosis.divergent = True
+        return self.refuse("diverges", detail)
 
     def changed(self, integrand: Expr, lower: Expr = S.Zero, upper: Expr = oo) -> Problem:
         """The same question about another integrand and range, one level deeper."""

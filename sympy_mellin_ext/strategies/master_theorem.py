@@ -92,9 +92,11 @@ def closed_form_of_pieces(
     steps: tuple[Step, ...] = (),
 ) -> ClosedForm | None:
     """The closed form of a sum of pieces, with region, strip and values at removable singularities."""
-    outcome = converge(pieces, problem.facts)
+    outcome = converge(pieces, problem.facts, problem.principal)
+    if outcome == "diverges":
+        return problem.diverges("its behaviour at 0, at oo or at a pole between")
     if isinstance(outcome, str):
-        return problem.refuse(outcome, "no exponent makes the integral converge at 0 and at oo")
+        return problem.refuse(outcome, "a kernel grows too fast for a Mellin transform")
     region, at_zero, at_infinity = outcome
     value = total_value(pieces)
     if value.has(S.NaN, S.ComplexInfinity, S.Infinity, S.NegativeInfinity):

@@ -31,9 +31,9 @@ _reported: set[tuple[str, str]] = set()
 
 @cache
 def _load_built_in() -> None:
-    from . import master_theorem
+    from . import master_theorem, mellin_barnes, taylor
 
-    _strategies[:0] = [*master_theorem.STRATEGIES]
+    _strategies[:0] = [*master_theorem.STRATEGIES, *mellin_barnes.STRATEGIES, *taylor.STRATEGIES]
 
 
 def strategies() -> tuple[Strategy, ...]:
