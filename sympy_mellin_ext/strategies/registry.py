@@ -31,9 +31,14 @@ _reported: set[tuple[str, str]] = set()
 
 @cache
 def _load_built_in() -> None:
-    from . import master_theorem, mellin_barnes, taylor
+    from . import master_theorem, mellin_barnes, ranges, taylor
 
-    _strategies[:0] = [*master_theorem.STRATEGIES, *mellin_barnes.STRATEGIES, *taylor.STRATEGIES]
+    _strategies[:0] = [
+        *master_theorem.STRATEGIES,
+        *mellin_barnes.STRATEGIES,
+        *taylor.STRATEGIES,
+        *ranges.STRATEGIES,
+    ]
 
 
 def strategies() -> tuple[Strategy, ...]:
