@@ -3,6 +3,7 @@
 Sources: DLMF 5.2(iii) (Pochhammer symbols), 5.5.3 (reflection), 5.4.2 (double factorial), 1.2.6 (binomials),
 25.6.2 (Bernoulli numbers); growth of the remaining factors: DLMF 25.10, 25.11.43, 5.11.2, 25.12.
 """
+
 from __future__ import annotations
 
 from collections.abc import Callable
@@ -10,9 +11,35 @@ from dataclasses import dataclass
 from typing import NamedTuple
 
 from sympy import (
-    Add, Expr, Integer, Mul, Poly, PolynomialError, Pow, S, Symbol, bernoulli, beta, binomial,
-    catalan, cos, dirichlet_eta, exp, factorial, factorial2, ff, gamma, harmonic, log, polygamma, polylog, rf,
-    sin, sqrt, together, zeta,
+    Add,
+    Expr,
+    Integer,
+    Mul,
+    Poly,
+    PolynomialError,
+    Pow,
+    S,
+    Symbol,
+    bernoulli,
+    beta,
+    binomial,
+    catalan,
+    cos,
+    dirichlet_eta,
+    exp,
+    factorial,
+    factorial2,
+    ff,
+    gamma,
+    harmonic,
+    log,
+    polygamma,
+    polylog,
+    rf,
+    sin,
+    sqrt,
+    together,
+    zeta,
 )
 
 from ..gamma import Factor
@@ -74,7 +101,9 @@ class _Reader:
         self.culprit: Expr | None = None
 
     def form(self) -> CoefficientForm:
-        return CoefficientForm(Mul(*self.constant), Mul(*self.base), cancel(tuple(self.factors)), tuple(self.extras))
+        return CoefficientForm(
+            Mul(*self.constant), Mul(*self.base), cancel(tuple(self.factors)), tuple(self.extras)
+        )
 
     def take(self, node: Expr, e: int = 1) -> bool:
         """Multiply by ``node**e``; False if the node is of no known kind."""
@@ -112,7 +141,7 @@ class _Reader:
                     self.culprit = Pow(gamma(argument), e)
                     return False
                 self.constant.append(Pow(gamma(shift) * gamma(1 - shift), e))
-                self.base.append(S.NegativeOne ** slope)
+                self.base.append(S.NegativeOne**slope)
                 return self.gamma(1 - argument, -e)
             if e > 0:
                 # poles at positive n that are no poles of the coefficients
@@ -221,8 +250,10 @@ def _binomial(reader: _Reader, node: Expr, e: int) -> bool:
     upper, lower = node.args
     if not upper.has_free(reader.n):
         # (-1)**k*(-upper)_k/k!: regular for every k, and terminating for a natural upper
-        return reader.take(S.NegativeOne**lower, e) and _rising(reader, rf(-upper, lower, evaluate=False), e) and (
-            reader.gamma(lower + 1, -e)
+        return (
+            reader.take(S.NegativeOne**lower, e)
+            and _rising(reader, rf(-upper, lower, evaluate=False), e)
+            and (reader.gamma(lower + 1, -e))
         )
     return reader.quotient((upper + 1,), (lower + 1, upper - lower + 1), e)
 

@@ -3,14 +3,44 @@
 Sources: DLMF 4.6, 4.19, 4.24, 4.38 (elementary series), 7.6.1 (error function), 9.4 (Airy), 10.2.2, 10.25.2,
 10.27.4, 10.2.3 (Bessel functions of non-integer order).
 """
+
 from __future__ import annotations
 
 from collections.abc import Callable
 
 from sympy import (
-    Add, Expr, Integer, Pow, S, Symbol, acos, acot, airyai, airyaiprime, airybi, airybiprime, asin,
-    asinh, atan, atanh, besseli, besselj, besselk, bessely, cos, cosh, erf, erfc, exp, factorial, gamma, log, sin,
-    sinh, sqrt,
+    Add,
+    Expr,
+    Integer,
+    Pow,
+    S,
+    Symbol,
+    acos,
+    acot,
+    airyai,
+    airyaiprime,
+    airybi,
+    airybiprime,
+    asin,
+    asinh,
+    atan,
+    atanh,
+    besseli,
+    besselj,
+    besselk,
+    bessely,
+    cos,
+    cosh,
+    erf,
+    erfc,
+    exp,
+    factorial,
+    gamma,
+    log,
+    rf,
+    sin,
+    sinh,
+    sqrt,
 )
 
 # A power series: coefficients of x**0, x**1, ... ; a function: exponent -> power series.
@@ -45,7 +75,9 @@ def _plus(a: Pieces, b: Pieces) -> Pieces:
             result[exponent] = series
             continue
         old = result.pop(other)
-        low, high, first, second = (other, shift, old, series) if shift >= 0 else (exponent, -shift, series, old)
+        low, high, first, second = (
+            (other, shift, old, series) if shift >= 0 else (exponent, -shift, series, old)
+        )
         size = min(len(first), int(high) + len(second))
         moved = [S.Zero] * int(high) + second
         result[low] = [_tidy(first[i] + moved[i]) if i < len(moved) else first[i] for i in range(size)]
@@ -180,14 +212,17 @@ _SLOPE_RULES: dict[type, tuple[Callable[[Pieces], Pieces], int]] = {
     erfc: (_gauss, -1),
 }
 _WAVES: dict[type, tuple[tuple[type, type], int, int]] = {
-    sin: ((sin, cos), -1, 0), cos: ((sin, cos), -1, 1), sinh: ((sinh, cosh), 1, 0), cosh: ((sinh, cosh), 1, 1),
+    sin: ((sin, cos), -1, 0),
+    cos: ((sin, cos), -1, 1),
+    sinh: ((sinh, cosh), 1, 0),
+    cosh: ((sinh, cosh), 1, 1),
 }
 
 
 def _bessel(kind: type, order: Expr, a: Pieces) -> Pieces:
     """The ascending series; K and Y through the two solutions of opposite order."""
     if kind is besselk or kind is bessely:
-        if order.is_integer or order.is_number and order.is_integer is not False:
+        if order.is_integer or (order.is_number and order.is_integer is not False):
             raise NoSeries
         base = besseli if kind is besselk else besselj
         plus, minus = _bessel(base, order, a), _bessel(base, -order, a)
@@ -205,10 +240,10 @@ def _bessel(kind: type, order: Expr, a: Pieces) -> Pieces:
     total: Pieces = {}
     term: Pieces = {S.Zero: [S.One] + [S.Zero] * (len(series) - 1)}
     for k in range(int(len(series) / (2 * exponent)) + 1):
-        c = Integer(sign) ** k / (factorial(k) * gamma(order + k + 1))
+        c = Integer(sign) ** k / (factorial(k) * rf(order + 1, k))
         total = _plus(total, _scaled(term, c))
         term = _product(term, square)
-    return _product(_power(half, order), total)
+    return _scaled(_product(_power(half, order), total), 1 / gamma(order + 1))
 
 
 def _airy(kind: type, a: Pieces) -> Pieces:

@@ -3,13 +3,14 @@
 Source: G. H. Hardy, Ramanujan: Twelve Lectures on Subjects Suggested by His Life and Work (1940), ch. XI
 (master theorem, growth of phi); E. C. Titchmarsh, The Theory of Functions (1939), 5.81 (Carlson's theorem).
 """
+
 from __future__ import annotations
 
 from collections.abc import Callable, Iterable
 from dataclasses import dataclass
 from typing import NamedTuple
 
-from sympy import Abs, Add, Expr, Mul, Pow, S, Symbol, arg, gamma
+from sympy import Abs, Add, Expr, Mul, Pow, S, Symbol, arg, gamma, sympify
 
 from ..gamma import Factor, GammaProduct
 from ..gamma.product import cancel
@@ -83,7 +84,7 @@ def growth_ok(
     >>> growth_ok([Factor(0, 1, 1), Factor(1, -1, -1), Factor(1, -1, -1)], n=n)     # 0F2
     Growth(ok=False, needs=(), culprit=1/gamma(n + 1))
     """
-    factors = tuple(factors)
+    factors = tuple(Factor(sympify(a), sympify(A), e) for a, A, e in factors)
     room = S.Pi / 2 * Add(*(e * abs(A) for _, A, e in factors)) - angle - extra_type
     delta = Add(*(e * A for _, A, e in factors))
     inside, converges = sign(room), sign(delta)
@@ -128,13 +129,14 @@ class SeriesTransform:
         return Mul(*(e.value.xreplace({n: -s}) for e in self.extras))
 
 
-def _transform(form: CoefficientForm, n: Symbol, scale: Expr, lead: tuple[Factor, ...], sign: Sign) -> SeriesTransform:
-    one = S.One
+def _transform(
+    form: CoefficientForm, n: Symbol, scale: Expr, lead: tuple[Factor, ...], sign: Sign
+) -> SeriesTransform:
     factors = cancel(lead + tuple(Factor(a, -A, e) for a, A, e in form.factors))
     product = GammaProduct(form.constant, scale, factors)
     type_ = Add(*(e.type for e in form.extras))
     # the culprit is looked for in phi and Gamma(s), before anything cancels
-    whole = (Factor(S.Zero, one, 1), *(f for f in lead[1:]), *(Factor(a, -A, e) for a, A, e in form.factors))
+    whole = (Factor(S.Zero, S.One, 1), *lead[1:], *(Factor(a, -A, e) for a, A, e in form.factors))
     growth = growth_ok(factors, angle_of(scale), type_, sign, n)
     if growth.ok is False:
         if growth_ok(factors, S.Zero, type_, sign).ok:

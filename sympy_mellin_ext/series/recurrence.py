@@ -7,6 +7,7 @@ count too: ``exp(-x)*sin(x)`` has order 2, its two-term equation order 4.
 Source: W. Koepf, Power series in computer algebra, J. Symb. Comp. 13 (1992), sections 2-4 (equations of
 hypergeometric type); the search by undetermined coefficients is common practice.
 """
+
 from __future__ import annotations
 
 from collections.abc import Sequence
@@ -44,7 +45,7 @@ class Recurrence:
 def two_term(tower: Tower, f: Element, theta: Symbol) -> Recurrence | None:
     """The two-term equation of lowest order up to 4 and step up to 6, or None."""
     derivatives = [f]
-    for order in range(1, _HIGHEST_ORDER + 1):
+    for _ in range(_HIGHEST_ORDER):
         derivative = tower.derive(derivatives[-1])
         derivatives.append({m: tower.X * c for m, c in derivative.items()})
         if len({m for v in derivatives for m in v}) > _MOST_MONOMIALS:
@@ -65,10 +66,10 @@ def _rows(derivatives: Sequence[Element]) -> list[list[dict[int, PolyElement]]] 
     rows = []
     for monomial in sorted({m for v in derivatives for m in v}):
         entries = [v.get(monomial) for v in derivatives]
-        common = None
-        for c in entries:
-            if c is not None:
-                common = c.denom if common is None else common.lcm(c.denom)
+        denominators = [c.denom for c in entries if c is not None]
+        common = denominators[0]
+        for denominator in denominators[1:]:
+            common = common.lcm(denominator)
         row = []
         for c in entries:
             split: dict[int, PolyElement] = {}
@@ -170,7 +171,9 @@ def _solved(tower: Tower, rows: list, step: int, pivots: list[int], theta: Symbo
     left, right = linear_roots(a, theta), linear_roots(b, theta)
     if left is None or right is None:
         return None
-    ratio = (left[0] / right[0]).cancel() if not left[0].is_Number or not right[0].is_Number else left[0] / right[0]
+    ratio = left[0] / right[0]
+    if not ratio.is_Number:
+        ratio = ratio.cancel()
     return Recurrence(step, left[1], right[1], ratio, a + Symbol(tower.x.name) ** step * b)
 
 

@@ -5,14 +5,44 @@ coefficients in Q(parameters)(x); every generator carries its derivative, so dif
 
 Sources: DLMF 4.21-4.38 (elementary functions), 7.2 (error functions), 9.2.1 (Airy), 10.2.1, 10.25.1 (Bessel).
 """
+
 from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass
 
 from sympy import (
-    QQ, Expr, I, Integer, Mul, Pow, Rational, S, Symbol, acos, acot, airyai, airyaiprime, airybi, airybiprime, asin,
-    asinh, atan, atanh, besseli, besselj, besselk, bessely, cos, cosh, erf, erfc, exp, log, sin, sinh,
+    QQ,
+    Expr,
+    I,
+    Integer,
+    Mul,
+    Pow,
+    Rational,
+    S,
+    Symbol,
+    acos,
+    acot,
+    airyai,
+    airyaiprime,
+    airybi,
+    airybiprime,
+    asin,
+    asinh,
+    atan,
+    atanh,
+    besseli,
+    besselj,
+    besselk,
+    bessely,
+    cos,
+    cosh,
+    erf,
+    erfc,
+    exp,
+    log,
+    sin,
+    sinh,
 )
 from sympy.polys.fields import FracElement, FracField
 
@@ -27,7 +57,10 @@ _BESSEL = {besselj: -1, bessely: -1, besseli: 1, besselk: 1}
 _AIRY = (airyai, airybi, airyaiprime, airybiprime)
 _INNER = (asin, acos, atan, acot, asinh, atanh, log, erf, erfc)
 _PAIRS: dict[type, tuple[type, int, bool]] = {
-    sin: (cos, -1, True), cos: (sin, -1, False), sinh: (cosh, 1, True), cosh: (sinh, 1, False),
+    sin: (cos, -1, True),
+    cos: (sin, -1, False),
+    sinh: (cosh, 1, True),
+    cosh: (sinh, 1, False),
 }
 _KNOWN = {exp, *_BESSEL, *_AIRY, *_INNER, *_PAIRS}
 
@@ -232,7 +265,10 @@ class Tower:
             generator = make()
             self._known[key] = len(self.generators)
             self.generators.append(generator)
-        return {((self._known[key], 1),): self.K.one}
+        return self._single(self._known[key])
+
+    def _single(self, number: int) -> Element:
+        return {((number, 1),): self.K.one}
 
     def _unit(self, key: object, log_derivative: Element) -> Element:
         """A generator with the given logarithmic derivative."""
@@ -240,8 +276,8 @@ class Tower:
         if number is None:
             number = self._known[key] = len(self.generators)
             self.generators.append(Generator({}, unit=True))
-            self.generators[number].derivative = self.mul({((number, 1),): self.K.one}, log_derivative)
-        return {((number, 1),): self.K.one}
+            self.generators[number].derivative = self.mul(self._single(number), log_derivative)
+        return self._single(number)
 
     def _power(self, base: Expr, exponent: Expr) -> Element:
         u = self.element(base)
@@ -267,7 +303,7 @@ class Tower:
             self.generators.append(Generator({}, square=u))
             slope = p.diff(self.X) / (2 * p)
             self.generators[number].derivative = {((number, 1),): slope} if slope else {}
-        return {((number, 1),): self.K.one}
+        return self._single(number)
 
     def _root(self, key: object, u: Element) -> Element:
         return self.root(u) if set(u) == {()} else self._log_unit(("root", key), u, self.scalar(QQ(1, 2)))
@@ -300,11 +336,11 @@ class Tower:
         if key not in self._known:
             number = self._known[key] = len(self.generators)
             self.generators += [Generator({}), Generator({})]
-            s, c = {((number, 1),): self.K.one}, {((number + 1, 1),): self.K.one}
+            s, c = self._single(number), self._single(number + 1)
             self.generators[number].derivative = self.mul(du, c)
             self.generators[number + 1].derivative = self.mul(self.scalar(sign), self.mul(du, s))
         number = self._known[key]
-        return {((number, 1),): self.K.one}, {((number + 1, 1),): self.K.one}
+        return self._single(number), self._single(number + 1)
 
     def _second_order(
         self, kind: object, argument: Expr, du: Element, first: Element, potential: Element
@@ -314,12 +350,12 @@ class Tower:
         if key not in self._known:
             number = self._known[key] = len(self.generators)
             self.generators += [Generator({}), Generator({})]
-            value, slope = {((number, 1),): self.K.one}, {((number + 1, 1),): self.K.one}
+            value, slope = self._single(number), self._single(number + 1)
             self.generators[number].derivative = self.mul(du, slope)
             turned = self.add(self.mul(first, slope), self.mul(potential, value))
             self.generators[number + 1].derivative = self.mul(du, turned)
         number = self._known[key]
-        return {((number, 1),): self.K.one}, {((number + 1, 1),): self.K.one}
+        return self._single(number), self._single(number + 1)
 
     def _primitive(self, kind: type, node: Expr, u: Element, du: Element) -> Element:
         """Functions whose derivative is already there: logarithm, inverse functions, error functions."""
@@ -382,4 +418,3 @@ def split_power(f: Expr, x: Symbol) -> tuple[Expr, Expr]:
         else:
             rest.append(factor)
     return sum(alpha, Integer(0)), Mul(*rest)
-
