@@ -182,6 +182,11 @@ def test_facts_are_values():
         ([s**2 * t], "(t > 0) & Ne(s, 0)"),
         ([(s - t) ** 2], "Ne(s, t)"),
         ([a / (a + b) - half], "a > b"),
+        ([1 / (s - t)], "s > t"),
+        ([s / (s + 1)], "s*(s + 1) > 0"),
+        ([t * (s + 1) ** 2], "(t > 0) & Ne(s, -1)"),
+        ([a - sqrt(2) * b], "a > sqrt(2)*b"),
+        ([s - sqrt(2), 2 - sqrt(2) * s], "False"),
         ([s - Abs(nu)], "s > Abs(nu)"),
         ([s - Max(a, b), Min(a, 2 * b) - t], "(s > a) & (s > b) & (t < a) & (t < 2*b)"),
         ([Abs(nu) - s], "s < Abs(nu)"),
@@ -197,7 +202,15 @@ def test_facts_are_values():
 )
 def test_to_boolean(inequalities, expected):
     boolean = Region().positive(*inequalities).to_boolean()
-    words = {"Abs": Abs, "re": re, "arg": arg, "Ne": Ne, "pi": pi, **{x.name: x for x in (*_NAMES, z)}}
+    words = {
+        "Abs": Abs,
+        "re": re,
+        "arg": arg,
+        "Ne": Ne,
+        "pi": pi,
+        "sqrt": sqrt,
+        **{x.name: x for x in (*_NAMES, z)},
+    }
     assert boolean == S(expected, locals=words), boolean
 
 

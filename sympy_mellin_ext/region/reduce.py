@@ -9,7 +9,7 @@ from typing import TYPE_CHECKING
 
 from sympy import Abs, Expr, Integer, Max, Min, exp, integer_nthroot, log
 
-from .form import ONE, Form, Monomial, Rational, add_to, monomial, primitive, product, scaled, times
+from .form import ONE, Form, Monomial, Rational, add_to, constant, monomial, primitive, product, scaled, times
 from .signs import NEGATIVE, NOT_REAL, POSITIVE, ZERO
 
 if TYPE_CHECKING:
@@ -60,6 +60,8 @@ def divided(form: Form, facts: Facts) -> Form:
 
 
 def _step(form: Form, facts: Facts) -> Form | None:
+    if any(_opens(atom, exponent, key, form) for key in form for atom, exponent in key):
+        return _multiplied_out(form, {}, 1, facts)
     common = _common_factors(form)
     factors: dict[Expr, Rational] = {}
     sign = 1
@@ -95,6 +97,11 @@ def _common_factors(form: Form) -> dict[Expr, Rational]:
     return {atom: exponent for atom, exponent in smallest.items() if exponent}
 
 
+def _opens(atom: Expr, exponent: Rational, key: Monomial, form: Form) -> bool:
+    """Whether a sum in a term is multiplied out; a product of sums that is the only term stays."""
+    return bool(atom.is_Add) and exponent in (1, 2) and (len(form) > 1 or len(key) == 1)
+
+
 def _multiplied_out(form: Form, factors: Mapping[Expr, Rational], sign: int, facts: Facts) -> Form:
     """sign*form*product of powers; a sum that was a denominator is multiplied out."""
     total: Form = {}
@@ -104,7 +111,7 @@ def _multiplied_out(form: Form, factors: Mapping[Expr, Rational], sign: int, fac
         part: Form = {ONE: sign * value * coefficient}
         plain: dict[Expr, Rational] = {}
         for atom, exponent in together:
-            if atom.is_Add and exponent in (1, 2):
+            if _opens(atom, exponent, together, form):
                 for _ in range(int(exponent)):
                     part = product(part, facts.form(atom))
             else:
@@ -125,11 +132,13 @@ def _two_terms(form: Form, facts: Facts) -> Form | None:
         arguments = _arguments_of_increasing(first, second, facts)
         if arguments is not None:
             return facts.form((arguments[0] - arguments[1]) * (1 if plus > 0 else -1))
-    exponents = [exponent for key in (first, second) for _, exponent in key]
+    exponents = [pair[1] for key in (first, second) for pair in key if not constant((pair,))]
     numerator = gcd(*(e.numerator for e in exponents))
     denominator = lcm(*(e.denominator for e in exponents))
-    if numerator == denominator or any(
-        facts.mask(atom) != POSITIVE for key in (first, second) for atom, _ in key
+    if (
+        not exponents
+        or numerator == denominator
+        or any(facts.mask(atom) != POSITIVE for key in (first, second) for atom, _ in key)
     ):
         return None
     weight = _root(abs(Fraction(plus) / Fraction(minus)), numerator)

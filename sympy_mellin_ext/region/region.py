@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterable, Mapping
 from typing import Any
 
-from sympy import And, Eq, Expr, Ge, Gt, Le, Lt, Ne, Or, S
+from sympy import And, Eq, Expr, Ge, Gt, Le, Lt, Mul, Ne, Or, S
 from sympy.logic.boolalg import Boolean
 
 from .facts import Facts, real_part
@@ -15,7 +15,7 @@ from .linear import System
 from .projection import FALSE, irredundant
 from .reduce import divided, split, strict
 from .relation import merged, relation_of, row_key, sides
-from .signs import NEGATIVE, NOT_REAL, POSITIVE, ZERO, negated
+from .signs import NEGATIVE, NON_NEGATIVE, NOT_REAL, POSITIVE, ZERO, negated
 
 
 class Region(Judge):
@@ -123,22 +123,17 @@ class Region(Judge):
             return
         facts = self.facts
         sign = 1
-        if expr.is_Mul:
-            unknown: list[Expr] = []
-            for factor in expr.args:
-                mask = facts.mask(factor)
-                if mask == NEGATIVE:
-                    sign = -sign
-                elif mask != POSITIVE:
+        unknown: list[Expr] = []
+        for factor in expr.args if expr.is_Mul else (expr,):
+            mask = facts.mask(factor)
+            if mask == NEGATIVE:
+                sign = -sign
+            elif mask != POSITIVE:
+                if strictly and mask == NON_NEGATIVE and factor.is_Pow and factor.exp.is_even:
+                    others.append(Ne(factor.base, 0, evaluate=False))
+                else:
                     unknown.append(factor)
-            expr = unknown[0] if len(unknown) == 1 else expr.func(*unknown)
-        if strictly and expr.is_Pow and expr.exp.is_Integer and expr.exp.is_even and facts.real(expr.base):
-            if sign < 0:
-                rows.append(FALSE)
-            elif not facts.nonzero(expr.base):
-                others.append(Ne(expr.base, 0, evaluate=False))
-            return
-        form = facts.form(expr)
+        form = facts.form(unknown[0] if len(unknown) == 1 else Mul(*unknown))
         if sign < 0:
             form = scaled(form, -1)
         for piece in split(form, facts):
