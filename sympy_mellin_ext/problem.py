@@ -36,6 +36,7 @@ class Diagnosis:
     def __init__(self) -> None:
         self.findings: list[Refusal] = []
         self.divergent = False  # shown for the question as it was asked
+        self.proved: list[int] = []  # depths of the questions that were shown to diverge
 
     def refusal(self) -> Refusal:
         """The most telling finding: a later strategy that got further outranks 'no kernel'."""
@@ -86,8 +87,10 @@ class Problem:
 
     def diverges(self, detail: str) -> None:
         """Note that the integral is shown to diverge, for every value of the parameters."""
-        if self.diagnosis is not None and self.depth == 0:
-            self.diagnosis.divergent = True
+        if self.diagnosis is not None:
+            self.diagnosis.proved.append(self.depth)
+            if self.depth == 0:
+                self.diagnosis.divergent = True
         return self.refuse("diverges", detail)
 
     def changed(self, integrand: Expr, lower: Expr = S.Zero, upper: Expr = oo) -> Problem:

@@ -1,7 +1,7 @@
 """Kernels that vanish outside (0, 1): transforms of functions cut off at x = 1.
 
-They have ``Lam = Delta = 0``: the transform exists by the truncation alone, and the behaviour at x = 1 decides
-about convergence (b > 0), not a pole.
+They have ``Lam = Delta = 0``: the transform exists by the truncation alone, and the behaviour at x = 1
+decides about convergence (b > 0), not a pole.
 """
 
 from __future__ import annotations
@@ -24,8 +24,9 @@ def tail_power(b: Expr) -> GammaProduct:
     return of(up=[(1 - b, -1)], down=[(1, -1)], constant=gamma(b))
 
 
-# acos(z) on (0, 1) and acosh(z)/sqrt-type tails: by parts from DLMF 5.12.1 with z**2
+# acos(z) and acosh(1/z) on (0, 1): by parts from DLMF 5.12.1 with z**2
 ACOS = of(up=[(0, 1), (_H, _H)], down=[(1, 1), (1, _H)], constant=sqrt(pi) / 2)
+ASECH = of(up=[(0, 1), (0, _H)], down=[(1, 1), (_H, _H)], constant=sqrt(pi) / 2)
 
 # -log(1 - z) on (0, 1) has the transform (psi(s + 1) + EulerGamma)/s, which is no Gamma product: the
 # logarithms of 1 - z are derivatives with respect to b.

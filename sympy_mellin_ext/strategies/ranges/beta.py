@@ -118,7 +118,11 @@ def _cancels(group: list[_Ladder]) -> bool:
         total = Add(*column).expand()
         if total is S.Zero:
             continue
-        if total.is_number or not total.is_Add:
+        if total.is_number:
+            if not total.equals(0):
+                return False
+            continue
+        if not total.is_Add:
             return False
         if total.together().as_numer_denom()[0].expand() is not S.Zero:
             return False
@@ -126,7 +130,7 @@ def _cancels(group: list[_Ladder]) -> bool:
 
 
 def convergence(terms: Sequence[BetaTerm], facts: Facts) -> Region | None:
-    """Where the total converges; None where it cannot."""
+    """Where the total converges; None where the terms cancel beyond all bounds."""
     region = Region(facts)
     for side in (list(terms), [t.mirrored() for t in terms]):
         exponents = _surviving(side, facts)
@@ -134,7 +138,7 @@ def convergence(terms: Sequence[BetaTerm], facts: Facts) -> Region | None:
             return None
         for exponent in exponents:
             region = region.positive(real_part(exponent))
-    return None if region.empty else region
+    return region
 
 
 # -- value -------------------------------------------------------------------------------------------------

@@ -5,17 +5,18 @@ Source: DLMF 5.12.2 (powers of sine and cosine), 4.21.2 and 4.21.22-24 (multiple
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from math import gcd, lcm
 
 from sympy import (
     Add,
     Dummy,
     Expr,
-    Integer,
     Pow,
     Rational,
     S,
     Symbol,
+    asin,
     chebyshevt,
     chebyshevu,
     cos,
@@ -62,52 +63,57 @@ def is_circular(f: Expr, x: Symbol) -> bool:
 def on_quarters(problem: Problem) -> ClosedForm | None:
     """A range of whole quarter turns of the smallest angle in the integrand."""
     f, x = problem.integrand, problem.variable
-    rate = _rate(f, x)
-    if rate is None or problem.facts.sign(rate) != 1:
-        return None
-    first, last = (rate * problem.lower / (pi / 2)), (rate * problem.upper / (pi / 2))
-    first, last = (
-        first.cancel() if not first.is_number else first,
-        last.cancel() if not last.is_number else last,
-    )
-    if not first.is_Integer or not last.is_Integer or not 0 < last - first <= _MOST_QUARTERS:
-        return None
-    sn, cs = Dummy("sn"), Dummy("cs")
-    g = _algebraic(f, x, rate, sn, cs)
-    if g is None:
-        return problem.refuse("range", "not a function of sin and cos of one angle")
-    quarters = [_quarter(g, q, sn, cs) for q in range(int(first), int(last))]
-    counted: dict[Expr, int] = {}
-    for quarter in quarters:
-        counted[quarter] = counted.get(quarter, 0) + 1
-    return _by_quarters(problem, counted, sn, cs, rate) or _by_halves(
-        problem, g, int(first), int(last), sn, cs, rate
-    )
+    for rate in _rates(f, x):
+        if problem.facts.sign(rate) != 1:
+            continue
+        first, last = (_whole(rate * end / (pi / 2)) for end in (problem.lower, problem.upper))
+        if first is None or last is None or not 0 < last - first <= _MOST_QUARTERS:
+            continue
+        g = _algebraic(f, x, rate, (first, last) == (0, 1))
+        if g is None:
+            return problem.refuse("range", "not a function of sin and cos of one angle")
+        return _by_quarters(problem, g, first, last, rate) or _by_halves(problem, g, first, last, rate)
+    return problem.refuse("range", "not a whole number of quarter turns")
 
 
-def _rate(f: Expr, x: Symbol) -> Expr | None:
-    """The greatest w with every angle of the form ``n*w*x + constant``."""
-    slopes: list[Expr] = []
+def _whole(turns: Expr) -> int | None:
+    turns = turns if turns.is_number else turns.cancel()
+    return int(turns) if turns.is_Integer else None
+
+
+def _rates(f: Expr, x: Symbol) -> list[Expr]:
+    """For every class of commensurable angles the greatest w with all of them of the form ``n*w*x + constant``."""
+    classes: list[list[Expr]] = []
     for node in preorder_traversal(f):
         if isinstance(node, CIRCULAR) and node.has_free(x):
             slope = node.args[0].diff(x)
             if slope.has_free(x) or slope.is_zero:
-                return None
-            slopes.append(slope)
-    if not slopes:
-        return None
-    first = slopes[0]
-    ratios = [(s / first).cancel() for s in slopes]
-    if not all(r.is_Rational for r in ratios):
-        return None
-    den = lcm(*(int(r.q) for r in ratios))
-    num = gcd(*(abs(int(r * den)) for r in ratios))
-    rate = first * Rational(num, den)
-    return -rate if rate.could_extract_minus_sign() else rate
+                return []
+            for members in classes:
+                if (slope / members[0]).cancel().is_Rational:
+                    members.append(slope)
+                    break
+            else:
+                classes.append([slope])
+    rates = []
+    for members in classes:
+        ratios = [(s / members[0]).cancel() for s in members]
+        den = lcm(*(int(r.q) for r in ratios))
+        num = gcd(*(abs(int(r * den)) for r in ratios))
+        rate = members[0] * Rational(num, den)
+        rates.append(-rate if rate.could_extract_minus_sign() else rate)
+    return rates
 
 
-def _algebraic(f: Expr, x: Symbol, rate: Expr, sn: Symbol, cs: Symbol) -> Expr | None:
-    """``f`` in ``sn = sin(rate*x)`` and ``cs = cos(rate*x)``."""
+_SIN, _COS = Dummy("sin", positive=True), Dummy("cos", positive=True)
+
+
+def _algebraic(f: Expr, x: Symbol, rate: Expr, first_quarter: bool) -> Expr | None:
+    """``f`` in ``sin(rate*x)`` and ``cos(rate*x)``, as they are in the first quarter.
+
+    There another angle may occur as a multiple of ``asin(sin(rate*x))``.
+    """
+    sn, cs = _SIN, _COS
     if not f.has_free(x):
         return f
     if isinstance(f, CIRCULAR):
@@ -115,6 +121,8 @@ def _algebraic(f: Expr, x: Symbol, rate: Expr, sn: Symbol, cs: Symbol) -> Expr |
         n = (angle.diff(x) / rate).cancel()
         shift = angle.subs(x, 0)
         if not n.is_Integer or abs(n) > _LARGEST_MULTIPLE:
+            if first_quarter and shift is S.Zero and isinstance(f, (sin, cos)):
+                return f.func(n * asin(sn))
             return None
         m = abs(int(n))
         c: Expr = chebyshevt(m, cs)
@@ -124,43 +132,47 @@ def _algebraic(f: Expr, x: Symbol, rate: Expr, sn: Symbol, cs: Symbol) -> Expr |
         if shift is not S.Zero:
             s, c = (s * cos(shift) + c * sin(shift)), (c * cos(shift) - s * sin(shift))
         return {sin: s, cos: c, tan: s / c, cot: c / s, sec: 1 / c, csc: 1 / s}[type(f)]
-    args = [_algebraic(a, x, rate, sn, cs) for a in f.args]
+    args = [_algebraic(a, x, rate, first_quarter) for a in f.args]
     if any(a is None for a in args):
         return None
     return f.func(*args)
 
 
-def _quarter(g: Expr, q: int, sn: Symbol, cs: Symbol) -> Expr:
+def _quarter(g: Expr, q: int) -> Expr:
     """``g`` on quarter number q as a function of the angle in (0, pi/2), run through in either direction."""
     s, c = ((1, 1), (1, -1), (-1, -1), (-1, 1))[q % 4]
-    a, b = Dummy("a", positive=True), Dummy("b", positive=True)
-    table = {sn: s * a, cs: c * b}
-    return g.xreplace(table).xreplace({a: _POSITIVE[0], b: _POSITIVE[1]})
+    return g.xreplace({_SIN: s * _SIN, _COS: c * _COS})
 
 
-_POSITIVE = (Dummy("sin", positive=True), Dummy("cos", positive=True))
+def _by_quarters(problem: Problem, g: Expr, first: int, last: int, rate: Expr) -> ClosedForm | None:
+    quarters = [_quarter(g, q) for q in range(first, last)]
+    parts = _counted(quarters, lambda part: _first_quarter(problem, part), rate)
+    return None if parts is None else added(problem, parts, Step("quarter turns, t = sin(x)**2", "DLMF 5.12.2"))
 
 
-def _by_quarters(
-    problem: Problem, counted: dict[Expr, int], sn: Symbol, cs: Symbol, rate: Expr
-) -> ClosedForm | None:
+def _counted(
+    integrands: list[Expr], solve: Callable[[Expr], ClosedForm | None], rate: Expr
+) -> list[tuple[Expr, ClosedForm]] | None:
+    """Equal and opposite integrands solved once; opposite ones only for their convergence."""
+    counted: dict[Expr, int] = {}
+    for integrand in integrands:
+        counted[integrand] = counted.get(integrand, 0) + 1
     parts: list[tuple[Expr, ClosedForm]] = []
-    todo = dict(counted)
-    while todo:
-        integrand, count = next(iter(todo.items()))
-        del todo[integrand]
-        opposite = todo.pop(-integrand, 0)
-        answer = _first_quarter(problem, integrand)
+    while counted:
+        integrand, count = next(iter(counted.items()))
+        del counted[integrand]
+        opposite = counted.pop(-integrand, 0)
+        answer = solve(integrand)
         if answer is None:
             return None
         parts.append(((count - opposite) / rate, answer))
-    return added(problem, parts, Step("quarter turns, t = sin(x)**2", "DLMF 5.12.2"))
+    return parts
 
 
 def _first_quarter(problem: Problem, g: Expr) -> ClosedForm | None:
     """(0, pi/2): ``t = sin(x)**2`` with ``dx = dt/(2*sqrt(t*(1-t)))``, or ``u = tan(x)``."""
     t = fresh(problem, positive=True)
-    a, b = _POSITIVE
+    a, b = _SIN, _COS
     answer = solve_unit(problem, g.xreplace({a: sqrt(t), b: sqrt(1 - t)}) / (2 * sqrt(t) * sqrt(1 - t)), t)
     if answer is not None:
         return answer
@@ -169,29 +181,18 @@ def _first_quarter(problem: Problem, g: Expr) -> ClosedForm | None:
     return handed_on(problem, _joined(inner / (1 + u**2)), u)
 
 
-def _by_halves(
-    problem: Problem, g: Expr, first: int, last: int, sn: Symbol, cs: Symbol, rate: Expr
-) -> ClosedForm | None:
+def _by_halves(problem: Problem, g: Expr, first: int, last: int, rate: Expr) -> ClosedForm | None:
     """Half turns: ``u = tan(x/2)`` on (0, pi) and, mirrored, on (pi, 2*pi)."""
     if first % 2 or last % 2:
         return None
     u = fresh(problem, positive=True)
-    counted: dict[Expr, int] = {}
+    halves = []
     for half in range(first // 2, last // 2):
         turn = 1 if half % 2 == 0 else -1
-        table = {sn: turn * 2 * u / (1 + u**2), cs: (1 - u**2) / (1 + u**2)}
-        inner = _joined(g.xreplace(table) * 2 / (1 + u**2))
-        counted[inner] = counted.get(inner, 0) + 1
-    parts: list[tuple[Expr, ClosedForm]] = []
-    while counted:
-        inner, count = next(iter(counted.items()))
-        del counted[inner]
-        opposite = counted.pop(-inner, 0)
-        answer = handed_on(problem, inner, u)
-        if answer is None:
-            return None
-        parts.append((Integer(count - opposite) / rate, answer))
-    return added(problem, parts, Step("u = tan(x/2)", "DLMF 4.21.31-33-type"))
+        inner = g.xreplace({_SIN: turn * 2 * u / (1 + u**2), _COS: (1 - u**2) / (1 + u**2)})
+        halves.append(_joined(inner * 2 / (1 + u**2)))
+    parts = _counted(halves, lambda part: handed_on(problem, part, u), rate)
+    return None if parts is None else added(problem, parts, Step("u = tan(x/2)", "from memory: Weierstrass"))
 
 
 def _joined(expr: Expr) -> Expr:

@@ -12,6 +12,7 @@ from sympy.logic.boolalg import Boolean
 from ...closed_form import ClosedForm, Step
 from ...problem import Problem
 from ...region import Facts, Region
+from ..tidy import tidy as shortened
 
 BAD = (S.NaN, S.ComplexInfinity, S.Infinity, S.NegativeInfinity)
 
@@ -60,12 +61,12 @@ def _at(answer: ClosedForm, where: Boolean) -> Expr:
 
 
 def replaced(answer: ClosedForm, old: Symbol, new: Expr, extra: Boolean, facts: Facts) -> ClosedForm:
-    """The answer with an auxiliary symbol written out, and one more condition."""
+    """The answer with an auxiliary positive symbol written out, and one more condition."""
     condition = Region(facts).holds(answer.condition.xreplace({old: new}), extra).to_boolean()
     strip = answer.strip
     return replace(
         answer,
-        value=answer.value.xreplace({old: new}),
+        value=shortened(answer.value).xreplace({old: new}),
         condition=condition,
         strip=None if strip is None else (strip[0].xreplace({old: new}), strip[1].xreplace({old: new})),
         special=tuple((w.xreplace({old: new}), v.xreplace({old: new})) for w, v in answer.special),

@@ -16,12 +16,14 @@ from sympy import (
     S,
     cot,
     factorial,
+    hyper,
     log,
     pi,
     polygamma,
     sqrt,
 )
 
+_T = Rational(3, 2)
 _GAUSS = {
     Rational(1, 3): -EulerGamma - 3 * log(3) / 2 - sqrt(3) * pi / 6,
     Rational(2, 3): -EulerGamma - 3 * log(3) / 2 + sqrt(3) * pi / 6,
@@ -30,15 +32,22 @@ _GAUSS = {
     Rational(1, 6): -EulerGamma - 2 * log(2) - 3 * log(3) / 2 - sqrt(3) * pi / 2,
     Rational(5, 6): -EulerGamma - 2 * log(2) - 3 * log(3) / 2 + sqrt(3) * pi / 2,
 }
+# sum (-1)**n/(2n+1)**2 is Catalan's constant, DLMF 25.11.40; the second is int_0^1 K(k) dk/pi*2,
+# Gradshteyn-Ryzhik 6.141.1 (from memory)
+_SERIES = {
+    hyper([S.Half, S.Half, 1], [_T, _T], -1): Catalan,
+    hyper([S.Half, S.Half, S.Half], [1, _T], 1): 4 * Catalan / pi,
+}
 
 
 def tidy(value: Expr) -> Expr:
-    """``value`` with its polygamma functions at rational numbers brought to the smallest ones, or to constants."""
+    """``value`` with polygamma functions at rational numbers brought to the smallest ones, or to constants."""
     table = {
         node: _named(int(node.args[0]), node.args[1])
         for node in value.atoms(polygamma)
         if node.args[0].is_Integer and node.args[1].is_Rational
     }
+    table.update({node: _SERIES[node] for node in value.atoms(hyper) if node in _SERIES})
     if not table:
         return value.expand() if value.is_number and value.is_Add else value
     value = value.xreplace(table)

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from dataclasses import replace
 
-from sympy import Dummy, Expr, Gt, S, Symbol, exp, oo
+from sympy import Dummy, Expr, Gt, S, Symbol, acos, asin, exp, oo, sqrt
 from sympy.logic.boolalg import Boolean
 
 from ...closed_form import ClosedForm, Step
@@ -18,10 +18,18 @@ from .unit import solve_unit
 def handed_on(
     problem: Problem, integrand: Expr, x: Symbol, lower: Expr = S.Zero, upper: Expr = oo
 ) -> ClosedForm | None:
-    """The changed problem, with another variable, given back to the registry."""
+    """The changed problem, with another variable, given back to the registry.
+
+    It must be equivalent to the problem or a part of its range: where it is shown to diverge, so does the whole.
+    """
     if problem.depth >= MAX_DEPTH:
         return None
-    return attempt(replace(problem.changed(integrand, lower, upper), variable=x))
+    inner = replace(problem.changed(integrand, lower, upper), variable=x)
+    seen = len(problem.diagnosis.proved) if problem.diagnosis is not None else 0
+    answer = attempt(inner)
+    if answer is None and problem.diagnosis is not None and inner.depth in problem.diagnosis.proved[seen:]:
+        return problem.diverges("after a change of variable, or over a part of the range")
+    return answer
 
 
 def fresh(problem: Problem, **assumptions: bool) -> Dummy:
@@ -35,17 +43,19 @@ def doubled(problem: Problem, answer: ClosedForm | None, factor: Expr, action: s
 
 
 def on_unit(problem: Problem, integrand: Expr, x: Symbol) -> ClosedForm | None:
-    """``int integrand dx`` over (0, 1): directly, else by ``x = exp(-t)``."""
-    answer = solve_unit(problem, integrand, x)
+    """``int integrand dx`` over (0, 1): directly, under x -> 1 - x, or by ``x = exp(-t)``."""
+    answer = solve_unit(problem, integrand, x) or solve_unit(problem, integrand.xreplace({x: 1 - x}), x)
+    if answer is None and integrand.has(acos, asin):
+        # x = sqrt(1 - y): acos(x) = asin(sqrt(y))
+        y = sqrt(1 - x)
+        keep = Dummy()
+        inner = integrand.xreplace({acos(x): keep}).xreplace({x: y}).xreplace({keep: asin(sqrt(x))}) / (2 * y)
+        answer = solve_unit(problem, inner, x)
     if answer is not None:
         return answer
     t = fresh(problem, positive=True)
-    return doubled(
-        problem,
-        handed_on(problem, integrand.xreplace({x: exp(-t)}) * exp(-t), t),
-        S.One,
-        "substitution x = exp(-t)",
-    )
+    answer = handed_on(problem, integrand.xreplace({x: exp(-t)}) * exp(-t), t)
+    return doubled(problem, answer, S.One, "substitution x = exp(-t)")
 
 
 def on_finite(problem: Problem) -> ClosedForm | None:

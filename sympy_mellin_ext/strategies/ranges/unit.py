@@ -6,11 +6,28 @@ from collections.abc import Sequence
 from dataclasses import dataclass, field
 from math import lcm
 
-from sympy import Add, Dummy, Expr, Poly, Rational, S, Symbol, gamma, hyper
+from sympy import (
+    Add,
+    Dummy,
+    Eq,
+    Expr,
+    Function,
+    Poly,
+    Pow,
+    Rational,
+    S,
+    Symbol,
+    besseli,
+    besselj,
+    exp,
+    gamma,
+    hyper,
+)
 from sympy.logic.boolalg import Boolean
 
 from ...closed_form import ClosedForm, Step
 from ...inverse import inverse_mellin, named_pfq
+from ...inverse.pfq import put
 from ...inverse.residues import left_series
 from ...inverse.signature import normalise, power
 from ...kernels.elementary import COS, EXP, SIN
@@ -19,8 +36,10 @@ from ...matching.waves import Draft
 from ...pieces import Piece
 from ...problem import Problem
 from ...region import Facts, Region, real_part
+from ..tidy import tidy as shortened
 from .beta import BetaTerm, convergence, total_value
 from .combined import BAD
+from .constants import tidy
 from .unit_reader import UnitReader
 
 NAME = "range (0, 1)"
@@ -43,58 +62,85 @@ class _Term:
 
 def solve_unit(problem: Problem, integrand: Expr, x: Symbol) -> ClosedForm | None:
     """``int integrand dx`` over (0, 1), ``x`` positive."""
-    drafts = UnitReader(x, problem.facts).read(integrand)
-    if drafts is None:
-        return problem.refuse("no kernel", f"a factor of {integrand} is not in the table on (0, 1)")
+    for fractions in (False, True):
+        drafts = UnitReader(x, problem.facts, fractions).read(integrand)
+        if drafts is None:
+            return problem.refuse("no kernel", f"a factor of {integrand} is not in the table on (0, 1)")
+        sorted_terms = [_sorted(draft, problem.facts) for draft in drafts]
+        if all(terms is not None for terms in sorted_terms):
+            return _sum(problem, [t for terms in sorted_terms if terms is not None for t in terms])
+    return problem.refuse("too many kernels", "a term has more than one kernel on (0, 1)")
+
+
+def _sum(problem: Problem, terms: Sequence[_Term]) -> ClosedForm | None:
     sums: dict[Expr, list[BetaTerm]] = {}
     others: list[_Term] = []
-    for draft in drafts:
-        terms = _sorted(draft, problem.facts)
-        if terms is None:
-            return problem.refuse("too many kernels", "a term has more than one kernel on (0, 1)")
-        for term in terms:
-            if term.foreign:
-                others.append(term)
-                continue
-            found = _beta_terms(term, problem.facts)
-            if found is None:
-                return problem.refuse("too many kernels", "several powers of 1 - x**r")
-            ratio, parts = found
-            sums.setdefault(ratio, []).extend(parts)
+    for term in terms:
+        if term.foreign:
+            others.append(term)
+            continue
+        found = _beta_terms(term, problem.facts)
+        if found is None:
+            return problem.refuse("too many kernels", "several powers of 1 - x**r")
+        ratio, parts = found
+        sums.setdefault(ratio, []).extend(parts)
     region = Region(problem.facts)
     values: list[Expr] = []
     for parts in sums.values():
-        parts = _merged(parts)
-        here = convergence(parts, problem.facts)
-        if here is None:
+        here = convergence(_merged(parts), problem.facts)
+        if here is None or here.empty:
+            if len(sums) == 1 and not others and here is not None and _certain(parts):
+                return problem.diverges("at 0 or at 1")
             return problem.refuse("diverges", "at 0 or at 1")
         region = region.meet(here)
-        values.append(total_value(parts))
+        values.append(total_value(_merged(parts)))
+    special: dict[Boolean, list[tuple[Expr, Expr]]] = {}
     for term in others:
-        value = _joint(term, problem.facts)
-        if value is None:
+        found_joint = _joint(term, problem.facts)
+        if found_joint is None:
             return problem.refuse("no kernel", "no form of the integral against a truncated power")
-        found_value, conditions, positive = value
+        value, conditions, positive, at_zero = found_joint
         region = region.holds(*conditions).positive(*positive)
-        values.append(found_value)
+        values.append(tidy(value))
+        if at_zero is not None:
+            special.setdefault(at_zero[0], []).append((values[-1], at_zero[1]))
     total = Add(*values)
     if total.has(*BAD):
         return problem.refuse("diverges", "the formula is not finite")
-    condition = region.to_boolean()
-    if condition is S.false:
+    if region.empty:
+        if len(terms) == 1:
+            return problem.diverges("at 0 or at 1")
         return problem.refuse("diverges", "the conditions contradict one another")
     source = _SERIES_SOURCE if others else _BETA_SOURCE
     sources = [k.source for t in others for k in t.foreign if k.source]
     return ClosedForm(
-        total, condition, None, NAME,
-        (Step("terms integrated over (0, 1)", source, total),), tuple(dict.fromkeys([*sources, source])),
-    )  # fmt: skip
+        shortened(total),
+        region.to_boolean(),
+        None,
+        NAME,
+        (Step("terms integrated over (0, 1)", source, total),),
+        tuple(dict.fromkeys([*sources, source])),
+        tuple((where, _replaced(total, where, pairs)) for where, pairs in special.items()),
+    )
+
+
+def _certain(parts: Sequence[BetaTerm]) -> bool:
+    """Whether nothing but what was seen can cancel: one term, or numbers throughout."""
+    return len(_merged(parts)) == 1 or not any(v.free_symbols for t in parts for v in (t.coefficient, t.s, t.b))
+
+
+def _replaced(total: Expr, where: Boolean, pairs: Sequence[tuple[Expr, Expr]]) -> Expr:
+    """The total with single values replaced by their limits, at a point where they read 0/0."""
+    rest = total - Add(*(value for value, _ in pairs))
+    return (rest.subs(where.lhs, where.rhs) + Add(*(limit for _, limit in pairs))).expand()
 
 
 # -- sorting -----------------------------------------------------------------------------------------------
 
 
 def _sorted(draft: Draft, facts: Facts) -> list[_Term] | None:
+    if draft.series:
+        return None
     term = _Term(draft.coefficient, draft.power, draft.logs)
     for kernel in draft.kernels:
         if kernel.name == "unit power":
@@ -107,6 +153,8 @@ def _sorted(draft: Draft, facts: Facts) -> list[_Term] | None:
             e, r = -kernel.arguments[0], kernel.ratio
             term.minus[2 * r] = term.minus.get(2 * r, S.Zero) + e
             term.minus[r] = term.minus.get(r, S.Zero) - e
+        elif kernel.name == "pole" or kernel.wave is not None or kernel.tilt is not None:
+            return None
         else:
             term.foreign.append(kernel)
     term.minus = {r: e for r, e in term.minus.items() if e is not S.Zero}
@@ -206,18 +254,21 @@ def _beta_terms(term: _Term, facts: Facts) -> tuple[Expr, list[BetaTerm]] | None
     return ratio, found
 
 
+_Joint = tuple[Expr, list[Boolean], list[Expr], tuple[Boolean, Expr] | None]
+
+
 # -- one further kernel ------------------------------------------------------------------------------------
 
 
-def _joint(term: _Term, facts: Facts) -> tuple[Expr, list[Boolean], list[Expr]] | None:
-    """Value, conditions, and what must be positive, for a truncated power against one kernel."""
+def _joint(term: _Term, facts: Facts) -> _Joint | None:
+    """Value, conditions, what must be positive, and a removable point, for a truncated power against one kernel."""
     (kernel,) = term.foreign
     if len(term.minus) > 1 or kernel.wave is not None:
         return None
     q, p = kernel.ratio, term.power
     r, e = next(iter(term.minus.items()), (S.One, S.Zero)) if term.minus else (S.One, S.Zero)
     b = e + 1
-    if kernel.name == "unit acos":
+    if kernel.name in ("unit acos", "unit asech"):
         return None if term.minus else _lone(kernel, term)
     slope = q / r
     if not slope.is_Rational:
@@ -244,13 +295,16 @@ def _joint(term: _Term, facts: Facts) -> tuple[Expr, list[Boolean], list[Expr]] 
     front = term.coefficient * kernel.product.constant * gamma(b) / r
     if known == 1:
         value = inverse_mellin(rows, scale, facts)
-    elif slope > 0:
-        value = _entire(rows, scale, known)
-    else:
+        return None if value is None else (front * value, conditions, positive, None)
+    if slope < 0:
         return None
-    if value is None:
+    found = _entire(rows, scale, known)
+    if found is None:
         return None
-    return front * value, conditions, positive
+    value, limit = found
+    if limit is not None:
+        return front * value, conditions, positive, (limit[0], front * limit[1])
+    return front * value, conditions, positive, None
 
 
 def _argument(kernel: Kernel) -> Expr:
@@ -258,10 +312,10 @@ def _argument(kernel: Kernel) -> Expr:
     return kernel.product.scale
 
 
-def _lone(kernel: Kernel, term: _Term) -> tuple[Expr, list[Boolean], list[Expr]]:
+def _lone(kernel: Kernel, term: _Term) -> _Joint:
     u = ((term.power + 1) / kernel.ratio).expand()
     value = term.coefficient / kernel.ratio * kernel.product.at(u)
-    return value, [], [real_part(term.power + 1)]
+    return value, [], [real_part(term.power + 1)], None
 
 
 def _edge(kernel: Kernel, p: Expr) -> list[Expr] | None:
@@ -285,25 +339,79 @@ def _edge(kernel: Kernel, p: Expr) -> list[Expr] | None:
     return positive
 
 
-def _entire(rows: list[tuple[Expr, Rational, int]], scale: Expr, known: int | None) -> Expr | None:
-    """The series at 0, which converges for every scale that the reader lets pass (DLMF 16.5.2)."""
+def _entire(
+    rows: list[tuple[Expr, Rational, int]], scale: Expr, known: int | None
+) -> tuple[Expr, tuple[Boolean, Expr] | None] | None:
+    """The series at 0, which converges for every scale that the reader lets pass (DLMF 16.5.2).
+
+    With the value at scale 0 where the closed form reads 0/0 there.
+    """
     norm = normalise(rows)
     w = Dummy("w", positive=True)
     series = left_series(norm.signature, w)
     if series is None or series.head is not S.Zero:
         return None
     total: list[Expr] = []
+    limits: list[Expr] = []
+    removable = False
     for tail in series.tails:
         degree = (tail.exponent * norm.power).expand()
         if not degree.is_Integer and not (known is None and degree.is_integer):
             return None
         argument = tail.sign * norm.scale * scale**norm.power
         upper, lower = _short(tail.upper, tail.lower)
-        f = named_pfq(upper, lower, argument) if known == -1 else None
-        if f is None:
-            f = hyper(upper, lower, argument)
-        total.append(tail.coefficient * power(norm.scale, tail.exponent) * scale**degree * f)
-    return norm.constant * Add(*total)
+        front = tail.coefficient * power(norm.scale, tail.exponent) * scale**degree
+        f, smooth = _series_function(upper, lower, argument, known)
+        removable = removable or not smooth
+        total.append(front * f)
+        limits.append(front if degree is S.Zero else S.Zero)
+    special = None
+    if removable:
+        symbol = next(a for a in sorted(scale.free_symbols, key=str) if not a.is_positive)
+        special = (Eq(symbol, 0), norm.constant * Add(*limits))
+    return norm.constant * Add(*total), special
+
+
+def _series_function(
+    upper: Sequence[Expr], lower: Sequence[Expr], argument: Expr, known: int | None
+) -> tuple[Expr, bool]:
+    """The series by name where that holds for every argument allowed; whether the form is defined at argument 0."""
+    plain = hyper(upper, lower, argument)
+    if len(upper) == 1 and not lower:
+        return (1 - argument).cancel() ** (-upper[0]), True
+    if known == -1:
+        f = named_pfq(upper, lower, argument)
+        return (plain if f is None else f), True
+    if not argument.is_real:
+        return plain, True
+    y = Dummy("y", positive=True)
+    f = named_pfq(upper, lower, -y)
+    if f is None or not all(type(node) in _ENTIRE for node in f.atoms(Function)):
+        return plain, True
+    if f.subs(y, 0) == 1:
+        return _at(f, y, -argument), True
+    c, degree = _monomial_scale(argument)
+    if c is None or degree != 1 or any(not n.exp.is_Integer for n in f.atoms(Pow) if n.base == y):
+        return plain, True
+    return _at(f, y, -argument), False
+
+
+# Functions whose formula in y > 0 continues to y < 0 as it stands.
+_ENTIRE = (exp, besselj, besseli)
+
+
+def _at(f: Expr, y: Symbol, argument: Expr) -> Expr:
+    return put(f, y, S.One, argument, S.One)
+
+
+def _monomial_scale(argument: Expr) -> tuple[Expr | None, Expr]:
+    """``argument = c*symbol**degree`` with c non-zero and one symbol of unknown sign."""
+    unknown = [a for a in argument.free_symbols if not a.is_positive]
+    if len(unknown) != 1:
+        return None, S.Zero
+    c, rest = argument.as_independent(unknown[0], as_Add=False)
+    base, degree = rest.as_base_exp()
+    return (c, degree) if base == unknown[0] and c.is_nonzero else (None, S.Zero)
 
 
 def _short(upper: Sequence[Expr], lower: Sequence[Expr]) -> tuple[list[Expr], list[Expr]]:
