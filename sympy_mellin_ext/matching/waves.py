@@ -5,6 +5,7 @@ Sources: DLMF 4.21.15-17 and 4.35.15-17 (products of circular and hyperbolic fun
 from __future__ import annotations
 
 from dataclasses import dataclass, replace
+from typing import Any
 
 from sympy import Abs, Add, Expr, I, Ne, S, atan, cos, pi, sign, sin, sqrt
 from sympy.logic.boolalg import And, Boolean
@@ -19,7 +20,10 @@ _SOURCE = "DLMF 5.9.1, 5.9.6, 5.9.7"
 
 @dataclass(frozen=True)
 class Draft:
-    """A term before its waves are multiplied out: ``exponents`` hold (ratio, c) for ``exp(c*x**ratio)``."""
+    """A term before its waves are multiplied out: ``exponents`` hold (ratio, c) for ``exp(c*x**ratio)``.
+
+    ``series`` holds factors that only the exponential series know: powers and logarithms of sums of exponentials.
+    """
 
     coefficient: Expr = S.One
     power: Expr = S.Zero
@@ -27,6 +31,7 @@ class Draft:
     exponents: tuple[tuple[Expr, Expr], ...] = ()
     trig: tuple[tuple[str, Expr, Expr], ...] = ()
     kernels: tuple[Kernel, ...] = ()
+    series: tuple[Any, ...] = ()
 
     def times(self, other: Draft) -> Draft:
         return Draft(
@@ -36,6 +41,7 @@ class Draft:
             self.exponents + other.exponents,
             self.trig + other.trig,
             self.kernels + other.kernels,
+            self.series + other.series,
         )
 
     def scaled(self, constant: Expr) -> Draft:

@@ -31,10 +31,11 @@ _reported: set[tuple[str, str]] = set()
 
 @cache
 def _load_built_in() -> None:
-    from . import master_theorem, mellin_barnes, ranges, taylor
+    from . import exponential_series, master_theorem, mellin_barnes, ranges, taylor
 
     _strategies[:0] = [
         *master_theorem.STRATEGIES,
+        *exponential_series.STRATEGIES,
         *mellin_barnes.STRATEGIES,
         *taylor.STRATEGIES,
         *ranges.STRATEGIES,

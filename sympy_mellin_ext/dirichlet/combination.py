@@ -1,0 +1,298 @@
+"""Linear combinations of Dirichlet series as one factor of a Mellin transform."""
+from __future__ import annotations
+
+from collections.abc import Iterable, Sequence
+from dataclasses import dataclass
+from functools import cached_property
+from typing import NamedTuple
+
+from sympy import Add, Catalan, Expr, Integer, Mul, Pow, Rational, S, digamma, dirichlet_eta, exp, log, pi, zeta
+
+from ..gamma.laurent import Series, multiply, power_series
+from . import functions
+from .periodic import Periodic, periodic
+
+
+class Row(NamedTuple):
+    """``coefficient * step**(-w) * Phi(z, w, a)`` at ``w = u - shift``."""
+
+    z: Expr
+    shift: Integer
+    step: Rational
+    a: Expr
+    coefficient: Expr
+
+
+@dataclass(frozen=True)
+class Combination:
+    """``sum_i c_i * M_i**(-w_i) * Phi(z_i, w_i, a_i)``, ``w_i = u - j_i``: a factor of a transform in u.
+
+    Examples
+    --------
+    >>> from sympy import S, symbols
+    >>> u = symbols('u')
+    >>> Combination((Row(S.One, S.Zero, S(2), S.Half, S.One),)).at(u)
+    (1 - 2**(-u))*zeta(u)
+    """
+
+    rows: tuple[Row, ...]
+
+    @cached_property
+    def _levels(self) -> tuple[tuple[Integer, _Level], ...]:
+        shifts = sorted({row.shift for row in self.rows})
+        levels = ((j, _Level.of([r for r in self.rows if r.shift == j])) for j in shifts)
+        return tuple((j, level) for j, level in levels if not level.empty)
+
+    def at(self, u: Expr) -> Expr:
+        """The value at ``u``, which must not be a pole."""
+        return Add(*(level.at((u - j).expand() if j else u) for j, level in self._levels))
+
+    def laurent(self, u: Expr, rate: Expr, terms: int) -> Series:
+        """Laurent series at ``u + rate*eps``; raises NoClosedForm where a coefficient has no name."""
+        parts = [level.laurent((u - j).expand() if j else u, rate, terms) for j, level in self._levels]
+        return _added(parts, terms)
+
+    def poles(self) -> tuple[Expr, ...]:
+        """The poles in u that do not cancel among the series."""
+        return tuple(1 + j for j, level in self._levels if level.residue is not S.Zero)
+
+    def removable(self) -> tuple[Expr, ...]:
+        """Points where ``at`` with a symbolic argument, specialised, would read oo - oo."""
+        return tuple(1 + j for j, level in self._levels if level.residue is S.Zero and level.singular)
+
+
+class _Level:
+    """The rows of one shift, brought to as few functions as possible."""
+
+    def __init__(self, unit: Periodic, hurwitz: Sequence[Row], alternating: Sequence[Row], lerch: Sequence[Row]) -> None:
+        self.unit, self.hurwitz, self.alternating, self.lerch = unit, tuple(hurwitz), tuple(alternating), tuple(lerch)
+
+    @classmethod
+    def of(cls, rows: Sequence[Row]) -> _Level:
+        rational = [r for r in rows if r.z in (S.One, S.NegativeOne) and r.a.is_Rational and 0 < r.a <= 1]
+        unit = periodic([(r.z, r.step, r.a, r.coefficient) for r in rational]) if rational else Periodic()
+        if unit is None:
+            unit, rational = Periodic(), []
+        rest = _merged(r for r in rows if r not in rational)
+        return cls(
+            unit,
+            [r for r in rest if r.z is S.One],
+            [r for r in rest if r.z is S.NegativeOne],
+            [r for r in rest if r.z not in (S.One, S.NegativeOne)],
+        )
+
+    @property
+    def empty(self) -> bool:
+        unit = self.unit
+        return not (unit.zeta or unit.eta or unit.hurwitz or self.hurwitz or self.alternating or self.lerch)
+
+    @cached_property
+    def _at_steps(self) -> list[tuple[Rational, Expr, Expr]]:
+        """(step, a, c) of every Hurwitz zeta function, a = 1 for Riemann's."""
+        found = [(d, S.One, c) for d, c in self.unit.zeta.items()]
+        found += [(step, a, c) for (step, a), c in self.unit.hurwitz.items()]
+        return found + [(r.step, r.a, r.coefficient) for r in self.hurwitz]
+
+    @cached_property
+    def residue(self) -> Expr:
+        """At w = 1."""
+        total = Add(*(c / step for step, _, c in self._at_steps)).expand()
+        if total is S.Zero or total.is_number:
+            return S.Zero if total.is_number and total.equals(0) else total
+        return S.Zero if total.is_Add and total.together().as_numer_denom()[0].expand() is S.Zero else total
+
+    @property
+    def singular(self) -> bool:
+        """Whether single terms have a pole at w = 1."""
+        return bool(self._at_steps) or any(r.a is not S.One for r in self.alternating)
+
+    # -- values --------------------------------------------------------------------------------------------
+
+    def at(self, w: Expr) -> Expr:
+        if w is S.One:
+            return self._finite_part_at_one()
+        if w.is_Integer and w.is_positive:
+            return self._at_integer(int(w))
+        return Add(
+            *(c * _power(step, w) * functions.value(S.One, w, a) for step, a, c in self.unit_and_hurwitz(w)),
+            *(c * _power(d, w) * dirichlet_eta(w) for d, c in self.unit.eta.items()),
+            *(r.coefficient * _power(r.step, w) * functions.value(r.z, w, r.a) for r in self.alternating + self.lerch),
+        )
+
+    def unit_and_hurwitz(self, w: Expr) -> list[tuple[Rational, Expr, Expr]]:
+        """As ``_at_steps``, with the powers that multiply zeta(w) joined in one coefficient."""
+        zetas = self.unit.zeta
+        if len(zetas) < 2:
+            return self._at_steps
+        factor = Add(*(c * _power(d, w) for d, c in zetas.items()))
+        return [(S.One, S.One, factor), *self._at_steps[len(zetas) :]]
+
+    def _at_integer(self, w: int) -> Expr:
+        """At a whole w > 1: reflection where it applies."""
+        n = Integer(w)
+        terms = [c * step ** (-n) * zeta(n) for step, c in self.unit.zeta.items()]
+        terms += [c * d ** (-n) * dirichlet_eta(n) for d, c in self.unit.eta.items()]
+        pairs = [(step, a, c) for (step, a), c in self.unit.hurwitz.items()]
+        pairs += [(r.step, r.a, r.coefficient) for r in self.hurwitz]
+        terms += _reflected(S.One, w, pairs)
+        terms += _reflected(S.NegativeOne, w, [(r.step, r.a, r.coefficient) for r in self.alternating])
+        terms += _inverted(w, self.lerch)
+        return Add(*terms)
+
+    def _finite_part_at_one(self) -> Expr:
+        """At w = 1, less the pole ``residue/(w - 1)``: DLMF 25.2.4 and 25.11.29-type, zeta(w, a) = 1/(w-1) - psi(a) + ..."""
+        terms = [-c / step * log(step) for step, _, c in self._at_steps]
+        terms += [c / d * dirichlet_eta(S.One) for d, c in self.unit.eta.items()]
+        terms += _reflected(S.One, 1, self._at_steps)
+        terms += _reflected(S.NegativeOne, 1, [(r.step, r.a, r.coefficient) for r in self.alternating])
+        terms += _inverted(1, self.lerch)
+        return Add(*terms)
+
+    # -- series --------------------------------------------------------------------------------------------
+
+    def laurent(self, w: Expr, rate: Expr, terms: int) -> Series:
+        at_pole = w is S.One
+        first = -1 if at_pole and self.residue is not S.Zero else 0
+        count = terms + 1 if at_pole and first == 0 else terms
+        if first == 0 and terms == 1:
+            return Series(0, (self.at(w),))
+        parts = [
+            _stepped(functions.hurwitz_series(w, rate, a, count), step, w, rate, count).times(c)
+            for step, a, c in self._at_steps
+        ]
+        # with the pole cancelled the single ones start one place early
+        total = _added(parts, count) if parts else Series(0, (S.Zero,) * terms)
+        if at_pole and first == 0 and parts:
+            total = Series(0, tuple(total.coefficient(k) for k in range(terms)))
+        others = [
+            _stepped(functions.eta_series(w, rate, terms), d, w, rate, terms).times(c) for d, c in self.unit.eta.items()
+        ]
+        others += [
+            _stepped(functions.series(r.z, w, rate, r.a, terms), r.step, w, rate, terms).times(r.coefficient)
+            for r in self.alternating + self.lerch
+        ]
+        result = _added([total, *others], terms) if parts else _added(others, terms)
+        if at_pole and terms + first > 0:
+            # the same coefficient, with reflection applied
+            place = -first
+            coefficients = list(result.coefficients)
+            coefficients[place] = self._finite_part_at_one()
+            result = Series(first, tuple(coefficients))
+        return result
+
+
+def _power(step: Expr, w: Expr) -> Expr:
+    if step.is_Rational and step.q != 1:
+        return Pow(step.q, w) * Pow(step.p, -w)
+    return Pow(step, -w)
+
+
+def _stepped(series: Series, step: Expr, w: Expr, rate: Expr, terms: int) -> Series:
+    return series if step is S.One else multiply(series, power_series(step, -w, -rate, terms), terms)
+
+
+def _added(parts: Sequence[Series], terms: int) -> Series:
+    if not parts:
+        return Series(0, (S.Zero,) * terms)
+    first = min(p.valuation for p in parts)
+    return Series(
+        first,
+        tuple(
+            Add(*(p.coefficient(k) for p in parts if k - p.valuation < len(p.coefficients)))
+            for k in range(first, first + terms)
+        ),
+    )
+
+
+def _merged(rows: Iterable[Row]) -> list[Row]:
+    columns: dict[tuple[Expr, Integer, Rational, Expr], list[Expr]] = {}
+    for r in rows:
+        columns.setdefault((r.z, r.shift, r.step, r.a), []).append(r.coefficient)
+    merged = [Row(*key, Add(*column)) for key, column in columns.items()]
+    merged = [r._replace(coefficient=r.coefficient.expand()) if r.coefficient.is_Add else r for r in merged]
+    return [r for r in merged if r.coefficient is not S.Zero]
+
+
+# -- reflection ----------------------------------------------------------------------------------------------
+
+
+def _reflected(z: Expr, w: int, items: Sequence[tuple[Rational, Expr, Expr]]) -> list[Expr]:
+    """``sum c*step**(-w)*Phi(z, w, a)`` for z = +1 or -1, pairs with ``a + a'`` whole by the reflection formula.
+
+    At z = w = 1 the finite part ``-psi(a)`` stands for Phi.
+    """
+    terms: list[Expr] = []
+    rest = list(items)
+    parity = S.NegativeOne**w * (1 if z is S.One else -1)
+    while rest:
+        step, a, c = rest.pop(0)
+        for other in rest:
+            if other[0] != step:
+                continue
+            n = (a + other[1]).expand()
+            if not n.is_Integer:
+                continue
+            factor, shift = functions.shifted(z, Integer(w), (1 - a).expand(), int(n) - 1)
+            if (other[2] * factor - parity * c).expand() is not S.Zero or a == other[1]:
+                continue
+            two_sided = functions.two_sided if z is S.One else functions.two_sided_alternating
+            rest.remove(other)
+            terms.append(step ** Integer(-w) * (c * two_sided(w, a) + other[2] * shift))
+            break
+        else:
+            terms.append(c * step ** Integer(-w) * _single(z, w, a))
+    return terms
+
+
+def _single(z: Expr, w: int, a: Expr) -> Expr:
+    if z is S.NegativeOne:
+        return functions.alternating(Integer(w), a)
+    if w == 1:
+        return -digamma(a).expand(func=True) if a.is_Rational else -digamma(a)
+    if w == 2 and a.is_Rational and a.q == 4 and 0 < a < 1:
+        # DLMF 25.11.40-type: Catalan's constant is (zeta(2, 1/4) - zeta(2, 3/4))/16
+        return pi**2 + (8 if a.p == 1 else -8) * Catalan
+    return zeta(Integer(w), a)
+
+
+def _inverted(w: int, rows: Sequence[Row]) -> list[Expr]:
+    """General z; pairs of polylogarithms at z and 1/z by Jonquiere's inversion."""
+    terms: list[Expr] = []
+    rest = list(rows)
+    while rest:
+        row = rest.pop(0)
+        logarithm = _log_of_minus(row.z)
+        if row.a is S.One and logarithm is not None:
+            for other in rest:
+                if other.a is not S.One or other.step != row.step or (other.z * row.z).expand() != 1:
+                    continue
+                weights = (row.coefficient / row.z, other.coefficient / other.z)
+                if (weights[1] - S.NegativeOne**w * weights[0]).expand() is not S.Zero:
+                    continue
+                rest.remove(other)
+                terms.append(weights[0] * row.step ** Integer(-w) * functions.inversion(w, row.z, logarithm))
+                break
+            else:
+                terms.append(_plain(row, w))
+            continue
+        terms.append(_plain(row, w))
+    return terms
+
+
+def _plain(row: Row, w: int) -> Expr:
+    return Mul(row.coefficient, row.step ** Integer(-w), functions.value(row.z, Integer(w), row.a))
+
+
+def _log_of_minus(z: Expr) -> Expr | None:
+    """``log(-z)`` for ``z = -exp(v)`` with v real, or imaginary of modulus below pi as the caller has required."""
+    other = -z
+    if isinstance(other, exp):
+        v = other.args[0]
+        if v.is_extended_real or v.is_imaginary or (v / S.ImaginaryUnit).is_extended_real:
+            return v
+    elif other.is_positive:
+        return log(other)
+    return None
+
+
+__all__ = ["Combination", "Row"]
