@@ -1,15 +1,15 @@
 """Transforms of functions that no table holds, from the differential equation that they satisfy.
 
-The equation ``A(theta) f + x**m B(theta) f = 0`` gives the Gamma factors, the exponents of ``f`` at 0 say which of
-them have poles left of the strip, and the values of the leading coefficients decide the rest.
+The equation ``A(theta) f + x**m B(theta) f = 0`` gives the Gamma factors, the exponents of ``f`` at 0 say
+which of them have poles left of the strip, and the values of the leading coefficients decide the rest.
 
-Proof of each result: the product ``G`` satisfies ``A(-s) G(s) + B(-s-m) G(s+m) = 0`` and its residues at the left
-poles are the leading coefficients of ``f``, so the sum of all of them is the series of ``f``.  By the growth test
-``G`` decays on vertical lines, so that the inverse Mellin integral of ``G`` is analytic on x > 0 and, closed to
-the left, is that series: it is ``f``.
+Proof of each result: the product ``G`` satisfies ``A(-s) G(s) + B(-s-m) G(s+m) = 0`` and its residues at the
+left poles are the leading coefficients of ``f``, so the sum of all of them is the series of ``f``.  By the
+growth test ``G`` decays on vertical lines, so that the inverse Mellin integral of ``G`` is analytic on x > 0
+and, closed to the left, is that series: it is ``f``.
 
-Sources: R. B. Paris and D. Kaminski, Asymptotics and Mellin-Barnes Integrals (2001), 2.2 and 2.4; Hardy, Ramanujan (1940),
-ch. XI; W. Koepf, J. Symb. Comp. 13 (1992) (equations of hypergeometric type).
+Sources: R. B. Paris and D. Kaminski, Asymptotics and Mellin-Barnes Integrals (2001), 2.2, 2.4; G. H. Hardy,
+Ramanujan (1940), ch. XI; W. Koepf, J. Symb. Comp. 13 (1992) (equations of hypergeometric type).
 """
 
 from __future__ import annotations
@@ -215,8 +215,9 @@ class Piece(NamedTuple):
 def hypergeometric_pieces(f: Expr, x: Symbol, facts: HasSign | None = None) -> tuple[Piece, ...] | None:
     """``f`` on 0 < x < 1 as interlaced generalized hypergeometric series, or None.
 
-    The equation and the leading coefficients prove it; nothing is asked of ``f`` beyond x = 1.  The series have
-    ``len(upper) <= len(lower) + 1``, and where equality holds ``abs(argument) <= 1``.
+    The equation and the leading coefficients prove it; nothing is asked of ``f`` beyond x = 1.  The series
+    have ``len(upper) <= len(lower) + 1``, and where equality holds ``abs(argument) <= 1``; at argument 1 the
+    moments converge iff ``Re(sum(lower) - sum(upper)) > -1``.
 
     Examples
     --------

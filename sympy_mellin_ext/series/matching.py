@@ -225,7 +225,7 @@ def _constant(product: GammaProduct, c: Expr, head: Expr) -> Expr | None:
 
 
 def _same(product: GammaProduct, root: Expr, c: Expr, samples: list[dict[Symbol, Expr]]) -> bool:
-    """Residue and leading coefficient compared: exactly where they reduce, else to 30 digits at two places."""
+    """Whether they are equal: exactly where they reduce, else to 30 digits at two parameter values."""
     series = product.laurent(-root, 1)
     if series.valuation > -1:
         return c is S.Zero
@@ -267,7 +267,7 @@ def constant_form(c: Expr) -> Expr:
         else:
             rest.append(factor)
     value = Mul(*rest, shortest_quotient(up, down)) if up or down else c
-    # powers of one base with symbolic exponents, and linear factors, meet only when the exponents are added up
+    # powers of one base with symbolic exponents meet only when the exponents are added up
     bases: dict[Expr, list[Expr]] = {}
     for factor in Mul.make_args(value):
         base, e = factor.as_base_exp()

@@ -1,8 +1,8 @@
 """Transforms of digamma, loggamma, polygamma and Hurwitz zeta: phi is built on zeta functions.
 
 With ``c(n) = (-1)**(n+1)*zeta(n+1, a)`` for digamma(a+x) - digamma(a), and its derivatives and integral, the
-master theorem gives Gamma factors times ``zeta(k - s, a)``.  Subtracting other terms of the expansions at 0
-and oo moves the strip and leaves the product as it is; a pure power or logarithm has transform 0 in that sense.
+master theorem gives Gamma factors times ``zeta(k - s, a)``.  Subtracting other terms of the expansions at
+0 and oo moves the strip and leaves the product as it is: a power or logarithm has finite part 0.
 
 Sources: DLMF 5.7.3 and 5.7.4 (loggamma and digamma at 1), 5.11.1 and 5.11.2 (at oo), 5.15.1 (polygamma),
 25.11.10 and 25.11.43 (Hurwitz zeta); E. C. Titchmarsh, The Theory of the Riemann Zeta-Function (1951), 2.9.
@@ -242,20 +242,12 @@ def zeta_transform(f: Expr, x: Symbol, facts: HasSign | None = None) -> ZetaTran
     if not f.has(polygamma, loggamma, gamma, zeta, harmonic):
         return None
     sign = assumed_sign if facts is None else facts.sign
-    front, body = _common_power(f, x)
-    special: list[tuple[Expr, Expr]] = []
-    plain: list[Expr] = []
-    for term in Add.make_args(body):
-        c, rest = term.as_independent(x, as_Add=False)
-        if type(rest) in _KINDS or (isinstance(rest, log) and isinstance(rest.args[0], gamma)):
-            special.append((c, rest))
-        else:
-            plain.append(term)
-    if len(special) != 1:
+    split = _special_term(f, x)
+    if split is None:
         return None
-    ((c, node),) = special
+    front, c, node, rest = split
     read = _kernel(node, x, sign)
-    extra = _plain(plain, x)
+    extra = _plain(rest, x)
     if read is None or extra is None:
         return None
     kernel, scale, ratio = read
@@ -284,20 +276,41 @@ def zeta_transform(f: Expr, x: Symbol, facts: HasSign | None = None) -> ZetaTran
 _KINDS = (polygamma, loggamma, zeta, harmonic)
 
 
-def _common_power(f: Expr, x: Symbol) -> tuple[Expr, Expr]:
-    """A factor ``x**alpha`` taken off, and the bare logarithm of x never mistaken for one."""
-    front, rest = S.Zero, []
-    for factor in Mul.make_args(f):
-        base, e = factor.as_base_exp()
-        if base is x and not e.has_free(x):
-            front += e
-        else:
-            rest.append(factor)
-    body = Mul(*rest)
-    if body.is_Mul and any(a.is_Add for a in body.args):
-        c, body = body.as_independent(x, as_Add=False)
-        body = Add(*(c * a for a in Add.make_args(body)))
-    return front, body
+def _special_term(f: Expr, x: Symbol) -> tuple[Expr, Expr, Expr, list[Expr]] | None:
+    """``f = x**front * (c*node + sum of rest)`` with exactly one special function, ``node``."""
+    outside, body = [], f
+    if f.is_Mul:
+        sums = [a for a in f.args if a.is_Add]
+        if len(sums) > 1:
+            return None
+        if sums:
+            outside, body = [a for a in f.args if not a.is_Add], sums[0]
+    found: tuple[Expr, Expr, Expr] | None = None
+    rest: list[Expr] = []
+    for term in Add.make_args(body):
+        if not term.has_free(x) or not term.has(*_KINDS, gamma):
+            rest += Add.make_args(term.expand())
+            continue
+        front, c, node = S.Zero, S.One, None
+        for factor in (*outside, *Mul.make_args(term)):
+            base, e = factor.as_base_exp()
+            if not factor.has_free(x):
+                c *= factor
+            elif base is x and not e.has_free(x):
+                front += e
+            elif node is None:
+                node = factor
+            else:
+                return None
+        if node is None or found is not None:
+            return None
+        if type(node) not in _KINDS and not (isinstance(node, log) and isinstance(node.args[0], gamma)):
+            return None
+        found = front, c, node
+    if found is None:
+        return None
+    scale = Mul(*outside) * Pow(x, -found[0])
+    return (*found, [scale * term for term in rest])
 
 
 def _strip(
