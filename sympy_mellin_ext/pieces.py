@@ -3,12 +3,13 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 from dataclasses import dataclass
+from itertools import count
 from typing import NamedTuple, Protocol
 
 from sympy import Abs, Add, Expr, I, Mul, S, acos, binomial, chebyshevt, chebyshevu, cos, cot, exp, factorial, pi, sqrt
 from sympy.logic.boolalg import Boolean
 
-from .gamma import GammaProduct
+from .gamma import GammaProduct, Ladder
 from .gamma.laurent import Series, cosine_series, cotangent_series, exponential, multiply, power_series
 from .gamma.shortest import positive_power
 from .gamma.tilt import Tilt
@@ -135,20 +136,28 @@ class Piece:
         if self.product is None:
             return [iter([self.power])]
         side = end if self.ratio.is_positive else -end
-        starts = [(l.start, l.step) for l in self.product.ladders(side)]
-        ladders = [self._climb(start, step) for start, step in starts]
+        ladders = [self._climb(ladder) for ladder in self.product.ladders(side)]
         if side > 0:
             ladders += [iter([self._exponent(p)]) for d in self.dirichlet for p in d.poles()]
         return ladders
 
-    def _climb(self, start: Expr, step: Expr) -> Iterator[Expr]:
-        n = 0
-        while True:
-            yield self._exponent(start - n * step)
-            n += 1
+    def _climb(self, ladder: Ladder) -> Iterator[Expr]:
+        for n in count() if ladder.count is None else range(ladder.count):
+            yield self._exponent(ladder.start - n * ladder.step)
 
     def _exponent(self, pole: Expr) -> Expr:
         return (self.power - self.ratio * pole).expand()
+
+    @property
+    def plain(self) -> bool:
+        """Whether nothing but the Gammas can cancel a pole."""
+        return self.wave is None and self.tilt is None and not self.dirichlet
+
+    def has_pole(self, exponent: Expr) -> bool:
+        """Whether ``x**exponent`` occurs in the expansions, for a plain piece."""
+        if self.product is None:
+            return True
+        return self.pole_order(((self.power - exponent) / self.ratio).expand()) > 0
 
     def coefficients(self, exponent: Expr, end: int) -> list[Expr]:
         """Coefficients of ``x**exponent * log(x)**j``, j = 0, 1, ..., in the expansion at this end."""

@@ -30,10 +30,12 @@ class Ladder(NamedTuple):
     """The poles of one numerator Gamma that the denominators leave: ``start, start - step, ...``.
 
     ``step`` is positive for poles to the left of the strip and negative for poles to the right.
+    ``count`` rungs are left where a denominator cancels all further ones; None if it never ends.
     """
 
     start: Expr
     step: Expr
+    count: int | None = None
 
 
 @dataclass(frozen=True)
@@ -144,14 +146,26 @@ class GammaProduct:
 
     def ladders(self, side: int) -> Iterator[Ladder]:
         """Uncancelled pole ladders to the left (``side=+1``) or to the right (``side=-1``)."""
+        below = [f for f in self.factors if f.power < 0]
         for a, A, e in self.factors:
             if e < 0 or (A > 0) != (side > 0):
                 continue
+            length = _LONGEST_CANCELLATION
+            count = None
+            for f in below:
+                # Gamma(a + A*s)/Gamma(a + d + A*s) is one over a polynomial of degree d
+                gap = f.shift - a if f.slope == A else S.Zero
+                if not gap.is_Integer:
+                    gap = gap.expand()
+                if gap.is_Integer and gap > 0:
+                    count = length = int(gap)
+                    below.remove(f)
+                    break
             start, step = -a / A, 1 / A
-            for n in range(_LONGEST_CANCELLATION):
+            for n in range(length):
                 pole = (start - n * step).expand()
                 if self._survives(pole, side):
-                    yield Ladder(pole, step)
+                    yield Ladder(pole, step, None if count is None else count - n)
                     break
 
     def _survives(self, pole: Expr, side: int) -> bool:

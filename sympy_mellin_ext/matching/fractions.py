@@ -192,7 +192,9 @@ def _quadratic(
         angle, sine = t, sin(t)
         margin = None if facts.implies(abs(t) < pi) else abs(t) < pi
     else:
-        angle, sine = acos(cosine), sqrt(1 - cosine) * sqrt(1 + cosine)
+        angle, sine = acos(cosine), (
+                sqrt((1 - cosine**2).expand()) if cosine.is_number else sqrt(1 - cosine) * sqrt(1 + cosine)
+            )
         margin = None if facts.sign(b + 2 * m) == 1 else b + 2 * m > 0
         if facts.sign(b) == 1:
             margin = None

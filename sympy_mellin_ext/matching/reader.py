@@ -13,12 +13,14 @@ from sympy import (
     Pow,
     Rational,
     S,
+    Sum,
     Symbol,
     arg,
     binomial,
     cos,
     cosh,
     exp,
+    factor_terms,
     hyper,
     log,
     meijerg,
@@ -379,6 +381,13 @@ class Reader:
         if product is None:
             return None
         c, ratio = single
+        if type(expr) is hyper and len(expr.ap) <= len(expr.bq) and self.facts.sign(c) == 1:
+            # grows at oo: of use only in a product with a decaying kernel
+            kernel = Kernel(
+                f"turned {len(expr.ap)}F{len(expr.bq)}", product.with_scale(c), ratio, Wave(pi, S.Zero, False),
+                S.true, False, source, (*expr.ap, *expr.bq),
+            )  # fmt: skip
+            return [Draft(kernels=(kernel,))]
         kernel = self._kernel(type(expr).__name__, product, turn * c, ratio, source)
         return None if kernel is None else [Draft(kernels=(kernel,))]
 
@@ -458,6 +467,45 @@ def _meijer(reader: Reader, expr: Expr) -> Drafts | None:
     return reader.general(expr, expr.argument, lambda: meijer_transform(expr), "DLMF 16.17.1", 1)
 
 
+def _explicit_series(reader: Reader, expr: Expr) -> Drafts | None:
+    """``Sum(c(n)*x**(k*n + q), (n, 0, oo))`` by the coefficient formula, where phi passes the growth test."""
+    from ..series import Growth, coefficient_transform
+
+    x = reader.x
+    if len(expr.limits) != 1 or len(expr.limits[0]) != 3:
+        return None
+    n, first, last = expr.limits[0]
+    if last is not S.Infinity or not first.is_Integer:
+        return None
+    body = expr.function if first is S.Zero else expr.function.subs(n, n + first)
+    if body.is_Add:
+        body = factor_terms(body)
+    coefficients, exponent = [], S.Zero
+    for factor in Mul.make_args(body.expand(power_exp=False, func=False) if body.is_Mul and _adds(body, x) else body):
+        if not factor.has_free(x):
+            coefficients.append(factor)
+            continue
+        base, power = factor.as_base_exp()
+        single = monomial(base, x)
+        if single is None:
+            return None
+        coefficients.append(Pow(single[0], power))
+        exponent += single[1] * power
+    exponent = exponent.expand()
+    step, front = exponent.coeff(n, 1), exponent.coeff(n, 0)
+    if step.has_free(n) or (exponent - step * n - front).expand() is not S.Zero or reader.facts.sign(step) != 1:
+        return None
+    transform = coefficient_transform(Mul(*coefficients), n, reader.facts.sign)
+    if isinstance(transform, Growth) or transform.growth.ok is not True or transform.extras:
+        return None
+    kernel = reader._kernel("series", transform.product, S.One, step, "Hardy, Ramanujan: Twelve Lectures (1940), ch. XI")
+    return None if kernel is None else [Draft(power=front, kernels=(kernel,))]
+
+
+def _adds(body: Expr, x: Symbol) -> bool:
+    return any(f.is_Add and f.has_free(x) for f in body.args)
+
+
 def _magnitude(reader: Reader, expr: Expr) -> Drafts | None:
     inner = expr.args[0]
     return reader.read(inner) if reader._nonnegative(inner) else None
@@ -473,6 +521,7 @@ _RULES: dict[type, Callable[[Reader, Expr], Drafts | None]] = {
     Abs: _magnitude,
     hyper: _hypergeometric,
     meijerg: _meijer,
+    Sum: _explicit_series,
 }
 
 

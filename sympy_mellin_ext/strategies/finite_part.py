@@ -79,8 +79,8 @@ def edge(pieces: Sequence[Piece], end: int, facts: Facts) -> Edge | None:
 
 
 def _survives(exponent: Expr, pieces: list[Piece], end: int) -> bool:
-    if len(pieces) == 1 and pieces[0].wave is None and pieces[0].tilt is None and not pieces[0].dirichlet:
-        return True
+    if len(pieces) == 1 and pieces[0].plain:
+        return pieces[0].has_pole(exponent)
     totals: list[list[Expr]] = []
     for piece in pieces:
         for j, c in enumerate(piece.coefficients(exponent, end)):
