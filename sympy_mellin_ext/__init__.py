@@ -1,9 +1,29 @@
 """Closed forms, with their exact parameter regions, for half-line integrals in SymPy."""
 from .closed_form import ClosedForm
 from .integrate import closed_form, integrate, mellin, principal_value
+from .kernels import register_kernel, unregister_kernel
+from .pipelines import disable, enable, evaluate_integrals, extend_sympy
 from .problem import Refusal
+from .strategies import register, strategies, unregister
 from .theorem import master_theorem
 
 __version__ = "0.1.0"
 
-__all__ = ["ClosedForm", "Refusal", "closed_form", "integrate", "master_theorem", "mellin", "principal_value"]
+__all__ = [
+    "ClosedForm",
+    "Refusal",
+    "closed_form",
+    "disable",
+    "enable",
+    "evaluate_integrals",
+    "extend_sympy",
+    "integrate",
+    "master_theorem",
+    "mellin",
+    "principal_value",
+    "register",
+    "register_kernel",
+    "strategies",
+    "unregister",
+    "unregister_kernel",
+]

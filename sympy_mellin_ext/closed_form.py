@@ -5,7 +5,7 @@ from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field, replace
 from typing import TYPE_CHECKING, Any
 
-from sympy import Expr, Integral, Piecewise, S, Symbol, latex
+from sympy import And, Eq, Expr, Integral, Piecewise, S, Symbol, latex
 from sympy.logic.boolalg import Boolean
 
 if TYPE_CHECKING:
@@ -72,17 +72,24 @@ class ClosedForm:
     limits: tuple[tuple[Symbol, Expr, Expr], ...] = ()
     given: tuple[Any, ...] = field(default=(), repr=False)
 
-    def as_piecewise(self) -> Expr:
+    def as_piecewise(self, nested: bool = False) -> Expr:
         """The bare value where the assumptions imply the region, else a Piecewise that ends in the Integral.
 
-        Values at removable singularities stand first, on an ``Eq`` branch.
+        Values at removable singularities stand first, on an ``Eq`` branch (within the region); with
+        ``nested`` they stand inside the first branch, whose condition is then the region itself, which
+        is where SymPy's integral transforms read it.
         """
-        branches = [(value, where) for where, value in self.special]
         if self.condition is S.true:
-            if not branches:
-                return self.value
-            return Piecewise(*branches, (self.value, True))
+            return self._general()
+        if nested:
+            return Piecewise((self._general(), self.condition), (self.integral, True))
+        branches = [(value, And(where, self._region_at(where))) for where, value in self.special]
         return Piecewise(*branches, (self.value, self.condition), (self.integral, True))
+
+    def _region_at(self, where: Boolean) -> Boolean:
+        if isinstance(where, Eq) and isinstance(where.lhs, Symbol):
+            return self.condition.subs(where.lhs, where.rhs)
+        return self.condition
 
     @property
     def integral(self) -> Integral:

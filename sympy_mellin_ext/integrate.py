@@ -1,21 +1,22 @@
 """The public calls: a drop-in ``integrate``, ``closed_form`` without a fallback, and the transform itself."""
 from __future__ import annotations
 
+from collections.abc import Mapping
 from dataclasses import replace
-from typing import Any
+from typing import Any, NamedTuple
 
 import sympy
-from sympy import Expr, S, Symbol, Tuple, sympify
+from sympy import Expr, Integral, Interval, S, Symbol, Tuple, sympify
 
 from .arguments import Given, expression, relations, symbol
 from .closed_form import ClosedForm
+from .fallback import refused
 from .problem import Diagnosis, Problem, Refusal
 from .region import Facts
 from .strategies import attempt
 
 # Any of these, forced by the caller, asks for one of SymPy's own methods.
-_STOCK_METHODS = ("meijerg", "risch", "heurisch", "manual")
-
+STOCK_METHODS = ("meijerg", "risch", "heurisch", "manual")
 
 
 def integrate(f: Any, *limits: Any, given: Given = (), **hints: Any) -> Any:
@@ -44,47 +45,84 @@ def integrate(f: Any, *limits: Any, given: Given = (), **hints: Any) -> Any:
     >>> integrate(1/(x**2 + a**2)**3, (x, 0, oo))
     3*pi/(16*a**5)
     """
-    if len(limits) == 1 and not any(hints.get(name) for name in _STOCK_METHODS):
-        conds = hints.get("conds", "piecewise")
-        if conds in ("piecewise", "separate", "none") and _only_known(hints):
-            diagnosis = Diagnosis()
-            answer = _answer(f, limits, given, diagnosis)
-            if answer is None and diagnosis.divergent:
-                return _divergent(sympy.integrate(f, *limits, **hints), f, limits)
-            if answer is not None:
-                if conds == "piecewise":
-                    return answer.as_piecewise()
-                if conds == "none":
-                    return answer.value
-                return answer.value, answer.condition
+    if all(name == "conds" or name in STOCK_METHODS for name in hints):
+        outcome = try_strategies(f, limits, given, hints)
+        if outcome.found:
+            return outcome.answer
+        if outcome.question is not None:
+            with refused(*outcome.question):
+                return outcome.judged(sympy.integrate(f, *limits, **hints))
     return sympy.integrate(f, *limits, **hints)
 
 
-def _divergent(stock: Any, f: Expr, limits: tuple[Any, ...]) -> Any:
-    """What SymPy says of an integral that we know to diverge, unless it is a finite value."""
-    if isinstance(stock, Expr) and (stock.is_infinite or stock is S.NaN or isinstance(stock, sympy.Integral)):
-        return stock
-    return sympy.Integral(f, *limits)
+class Outcome(NamedTuple):
+    """What the strategies made of one call.
+
+    Attributes
+    ----------
+    answer :
+        In the form that ``conds`` asks for.
+    found : bool
+    question : tuple (f, limits), or None
+        The integral as it was understood; None if it was not one of ours to begin with.
+    divergent : bool
+        Whether the integral was shown to diverge.
+    """
+
+    answer: Any = None
+    found: bool = False
+    question: tuple[Expr, tuple[Tuple, ...]] | None = None
+    divergent: bool = False
+
+    def judged(self, stock: Any) -> Any:
+        """What SymPy says of the integral, unless it is a finite value of one that we know to diverge."""
+        if not self.divergent or self.question is None:
+            return stock
+        value = stock[0] if isinstance(stock, tuple) else stock
+        if isinstance(value, Integral) or (
+            isinstance(value, Expr)
+            and value.has(S.Infinity, S.NegativeInfinity, S.ComplexInfinity, S.NaN)
+            and not value.has(Integral)
+        ):
+            return stock
+        f, limits = self.question
+        return Integral(f, *limits)
 
 
-def _only_known(hints: dict[str, Any]) -> bool:
-    return all(name == "conds" or name in _STOCK_METHODS for name in hints)
-
-
-def _answer(f: Any, limits: tuple[Any, ...], given: Given, diagnosis: Diagnosis) -> ClosedForm | None:
-    """Our closed form, or None; what is malformed is left to SymPy, which raises its own exceptions."""
+def try_strategies(
+    f: Any, limits: tuple[Any, ...], given: Given, hints: Mapping[str, Any], nested: bool = False
+) -> Outcome:
+    """Our answer to a call of ``integrate``; what is malformed or forced is left to SymPy."""
+    conds = hints.get("conds", "piecewise")
+    if conds not in ("piecewise", "separate", "none") or any(hints.get(name) for name in STOCK_METHODS):
+        return Outcome()
     integral = _read(f, limits)
     if integral is None:
-        return None
+        return Outcome()
+    diagnosis = Diagnosis()
+    f, x, lower, upper = integral
+    question = (f, (Tuple(x, lower, upper),))
     facts = Facts(relations(given))
-    return _solve(*integral, facts, diagnosis)
+    try:
+        answer = _solve(*integral, facts, diagnosis)
+    except RecursionError:  # SymPy may have a shallower way
+        answer = None
+    if answer is None:
+        return Outcome(question=question, divergent=diagnosis.divergent)
+    if conds == "piecewise":
+        return Outcome(answer.as_piecewise(nested), True, question)
+    return Outcome(answer.value if conds == "none" else (answer.value, answer.condition), True, question)
 
 
 def _read(f: Any, limits: tuple[Any, ...]) -> tuple[Expr, Symbol, Expr, Expr] | None:
-    limit = limits[0]
-    if not isinstance(limit, (tuple, list, Tuple)) or len(limit) != 3:
+    if len(limits) != 1 or not isinstance(f, Expr):
         return None
-    if not isinstance(f, Expr) or not isinstance(limit[0], Symbol):
+    limit = limits[0]
+    if not isinstance(limit, (tuple, list, Tuple)):
+        return None
+    if len(limit) == 2 and isinstance(limit[1], Interval):
+        limit = (limit[0], limit[1].inf, limit[1].sup)
+    if len(limit) != 3 or not isinstance(limit[0], Symbol):
         return None
     lower, upper = limit[1], limit[2]
     if isinstance(lower, str) or isinstance(upper, str):
@@ -93,6 +131,8 @@ def _read(f: Any, limits: tuple[Any, ...]) -> tuple[Expr, Symbol, Expr, Expr] | 
     if not isinstance(lower, Expr) or not isinstance(upper, Expr):
         return None
     if not f.is_commutative or not f.has_free(limit[0]):
+        return None
+    if lower.has_free(limit[0]) or upper.has_free(limit[0]):
         return None
     return f, limit[0], lower, upper
 

@@ -1,6 +1,7 @@
 """What a row of the table is, and the look-up by function class."""
 from __future__ import annotations
 
+import threading
 from collections.abc import Callable
 from dataclasses import dataclass
 from functools import cache
@@ -9,6 +10,7 @@ from typing import TYPE_CHECKING
 from sympy import Expr, Function, Rational, S
 
 from ..gamma import GammaProduct
+from ..plugins import ROW_GROUP, plug_ins, report
 
 if TYPE_CHECKING:
     from .pairs import Pair
@@ -64,9 +66,80 @@ def pairs() -> dict[tuple[str, str], tuple[Pair, ...]]:
     return found
 
 
-@cache
-def rows() -> dict[type, Row]:
-    """The rows by function class."""
-    from . import bessel, elementary, integrals
+_rows: dict[type, Row] | None = None
+_lock = threading.RLock()
 
-    return {row.function: row for module in (elementary, integrals, bessel) for row in module.ROWS}
+
+def rows() -> dict[type, Row]:
+    """The rows by function class: the built-in ones, those of installed plug-ins, those registered."""
+    return _rows if _rows is not None else _load()
+
+
+def _load() -> dict[type, Row]:
+    """Read the table on first use; built-in rows stand before those of plug-ins."""
+    global _rows
+    with _lock:
+        if _rows is None:
+            from . import bessel, elementary, integrals
+
+            table = {row.function: row for module in (elementary, integrals, bessel) for row in module.ROWS}
+            for name, found in plug_ins(ROW_GROUP):
+                for row in found if isinstance(found, (list, tuple)) else (found,):
+                    if not isinstance(row, Row):
+                        report(f"plug-in {name!r}", TypeError(f"{row!r} is not a Row"))
+                    elif row.function in table:
+                        report(f"plug-in {name!r}", ValueError(_taken(row)))
+                    else:
+                        table[row.function] = row
+            _rows = table
+        return _rows
+
+
+def _taken(row: Row) -> str:
+    return f"a row for {row.name} is in the table already; unregister it first"
+
+
+def register_kernel(row: Row) -> None:
+    """Add a function to the table.
+
+    Raises
+    ------
+    TypeError
+        If ``row`` is not a Row.
+    ValueError
+        If the table has a row for this function already.
+
+    Examples
+    --------
+    The incomplete Bessel-type integral ``K(z) = int_0^oo exp(-t - z/t) dt`` as a function of its own:
+
+    >>> from sympy import Function, gamma, oo, symbols
+    >>> from sympy_mellin_ext import closed_form, register_kernel, unregister_kernel
+    >>> from sympy_mellin_ext.gamma import GammaProduct
+    >>> from sympy_mellin_ext.kernels import Row
+    >>> class K(Function):
+    ...     pass
+    >>> register_kernel(Row(K, lambda: GammaProduct.of(up=[(0, 1), (1, 1)]), "DLMF 10.32.10 with 10.43.19"))
+    >>> x, a = symbols('x a', positive=True)
+    >>> closed_form(x*K(a*x), (x, 0, oo)).value
+    2/a**2
+    >>> unregister_kernel(K)
+    """
+    global _rows
+    if not isinstance(row, Row):
+        raise TypeError(f"row must be a sympy_mellin_ext.kernels.Row, not {row!r}")
+    with _lock:
+        table = rows()
+        if row.function in table:
+            raise ValueError(_taken(row))
+        _rows = {**table, row.function: row}  # readers in other threads keep the table that they have
+
+
+def unregister_kernel(function: type[Function]) -> None:
+    """Remove the row of this function; ValueError if there is none."""
+    global _rows
+    with _lock:
+        table = rows()
+        if function not in table:
+            raise ValueError(f"the table has no row for {getattr(function, '__name__', function)}")
+        _rows = {f: row for f, row in table.items() if f is not function}

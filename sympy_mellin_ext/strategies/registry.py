@@ -1,11 +1,11 @@
 """The list of strategies and the loop that tries them."""
 from __future__ import annotations
 
-import warnings
-from functools import cache
+import threading
 from typing import Protocol
 
 from ..closed_form import ClosedForm
+from ..plugins import STRATEGY_GROUP, plug_ins, report
 from ..problem import Problem
 
 # A strategy may hand a changed problem on; more rounds than this would be running in circles.
@@ -25,58 +25,104 @@ class Strategy(Protocol):
         """The closed form of the problem, or None."""
 
 
-_strategies: list[Strategy] = []
-_reported: set[tuple[str, str]] = set()
-
-
-@cache
-def _load_built_in() -> None:
-    from . import exponential_series, master_theorem, mellin_barnes, ranges, taylor
-
-    _strategies[:0] = [
-        *master_theorem.STRATEGIES,
-        *exponential_series.STRATEGIES,
-        *mellin_barnes.STRATEGIES,
-        *taylor.STRATEGIES,
-        *ranges.STRATEGIES,
-    ]
+_strategies: tuple[Strategy, ...] | None = None  # replaced, never changed: readers need no lock
+_lock = threading.RLock()
 
 
 def strategies() -> tuple[Strategy, ...]:
-    """The strategies in the order in which they are tried."""
-    _load_built_in()
-    return tuple(_strategies)
+    """The strategies in the order in which they are tried: built-in ones, those of plug-ins, those registered."""
+    return _strategies if _strategies is not None else _load()
+
+
+def _load() -> tuple[Strategy, ...]:
+    global _strategies
+    with _lock:
+        if _strategies is None:
+            from . import master_theorem, mellin_barnes, ranges, taylor
+
+            found: list[Strategy] = [
+                *master_theorem.STRATEGIES,
+                *mellin_barnes.STRATEGIES,
+                *taylor.STRATEGIES,
+                *ranges.STRATEGIES,
+            ]
+            for name, strategy in plug_ins(STRATEGY_GROUP):
+                try:
+                    found = _with(found, strategy() if isinstance(strategy, type) else strategy)
+                except Exception as error:
+                    report(f"plug-in {name!r}", error)
+            _strategies = tuple(found)
+        return _strategies
 
 
 def register(strategy: Strategy, before: str | None = None, after: str | None = None) -> None:
     """Add a strategy, at the end or next to a named one.
 
+    Parameters
+    ----------
+    strategy : Strategy
+        Any object with a ``name`` and a method ``attempt(problem) -> ClosedForm | None``.
+    before, after : str
+        At most one of them: the name of the neighbour.
+
     Raises
     ------
+    TypeError
+        If it lacks a name or the method.
     ValueError
-        If a strategy of this name is there already, or the named neighbour is not.
+        If a strategy of this name is there already, or the named neighbour is not, or two are named.
+
+    Examples
+    --------
+    >>> from sympy import Function, Symbol, oo
+    >>> from sympy_mellin_ext import ClosedForm, integrate, register, unregister
+    >>> x, f = Symbol('x'), Function('f')
+    >>> class Normalised:
+    ...     name = "normalised density"
+    ...     def attempt(self, problem):
+    ...         if problem.half_line and problem.integrand == f(problem.variable):
+    ...             return ClosedForm(problem.integrand.func(0), strategy=self.name)
+    >>> register(Normalised(), before="master theorem")
+    >>> integrate(f(x), (x, 0, oo))
+    f(0)
+    >>> unregister("normalised density")
     """
-    _load_built_in()
-    names = [s.name for s in _strategies]
+    global _strategies
+    with _lock:
+        _strategies = tuple(_with(list(strategies()), strategy, before, after))
+
+
+def _with(
+    found: list[Strategy], strategy: Strategy, before: str | None = None, after: str | None = None
+) -> list[Strategy]:
+    """The list with one strategy more."""
+    if not isinstance(getattr(strategy, "name", None), str) or not callable(getattr(strategy, "attempt", None)):
+        raise TypeError(f"a strategy has a name (a string) and a method attempt(problem), unlike {strategy!r}")
+    if before is not None and after is not None:
+        raise ValueError("give before= or after=, not both")
+    names = [s.name for s in found]
     if strategy.name in names:
         raise ValueError(f"a strategy named {strategy.name!r} is registered already; unregister it first")
     neighbour = before if before is not None else after
     if neighbour is None:
-        _strategies.append(strategy)
-        return
-    if neighbour not in names:
-        raise ValueError(f"no strategy named {neighbour!r}; there are {', '.join(names)}")
-    _strategies.insert(names.index(neighbour) + (before is None), strategy)
+        return [*found, strategy]
+    place = _place(names, neighbour) + (before is None)
+    return [*found[:place], strategy, *found[place:]]
+
+
+def _place(names: list[str], name: str) -> int:
+    if name not in names:
+        raise ValueError(f"no strategy named {name!r}; there are {', '.join(names)}")
+    return names.index(name)
 
 
 def unregister(name: str) -> None:
     """Remove the strategy of this name; ValueError if there is none."""
-    _load_built_in()
-    for strategy in _strategies:
-        if strategy.name == name:
-            _strategies.remove(strategy)
-            return
-    raise ValueError(f"no strategy named {name!r}; there are {', '.join(s.name for s in _strategies)}")
+    global _strategies
+    with _lock:
+        found = strategies()
+        place = _place([s.name for s in found], name)
+        _strategies = found[:place] + found[place + 1 :]
 
 
 def attempt(problem: Problem) -> ClosedForm | None:
@@ -89,18 +135,10 @@ def attempt(problem: Problem) -> ClosedForm | None:
         except RecursionError:
             raise
         except Exception as error:
-            _report(strategy.name, error)
+            report(f"strategy {strategy.name!r}", error)
             continue
-        if answer is not None:
+        if isinstance(answer, ClosedForm):
             return answer
+        if answer is not None:
+            report(f"strategy {strategy.name!r}", TypeError(f"attempt returned {answer!r}, which is no ClosedForm"))
     return None
-
-
-def _report(name: str, error: Exception) -> None:
-    """Say once for each kind of failure that a strategy is broken; the call goes on without it."""
-    key = (name, type(error).__name__)
-    if key not in _reported:
-        _reported.add(key)
-        warnings.warn(
-            f"strategy {name!r} failed with {type(error).__name__}: {error}; it is skipped", RuntimeWarning, 3
-        )
