@@ -12,6 +12,7 @@ from sympy.logic.boolalg import And, Boolean
 
 from ..closed_form import ClosedForm, Step
 from ..gamma import GammaProduct
+from ..gamma.shortest import collect_powers
 from ..kernels.elementary import power as binomial_power
 from ..matching.waves import Draft
 from ..pieces import Piece
@@ -102,7 +103,7 @@ def _of_terms(
     where = region.to_boolean()
     if where is S.false:
         return problem.refuse("empty region", "the conditions contradict one another")
-    value = total_value(terms) / ratio
+    value = collect_powers(total_value(terms) / ratio)
     if value.has(S.NaN, S.ComplexInfinity, S.Infinity):
         return None
     step = Step("Beta integral in a power of exp(-x)", _SOURCE, value)

@@ -113,19 +113,11 @@ class _Level:
             return self._finite_part_at_one()
         if w.is_Integer and w.is_positive:
             return self._at_integer(int(w))
-        return Add(
-            *(c * _power(step, w) * functions.value(S.One, w, a) for step, a, c in self.unit_and_hurwitz(w)),
-            *(c * _power(d, w) * dirichlet_eta(w) for d, c in self.unit.eta.items()),
-            *(r.coefficient * _power(r.step, w) * functions.value(r.z, w, r.a) for r in self.alternating + self.lerch),
-        )
-
-    def unit_and_hurwitz(self, w: Expr) -> list[tuple[Rational, Expr, Expr]]:
-        """As ``_at_steps``, with the powers that multiply zeta(w) joined in one coefficient."""
-        zetas = self.unit.zeta
-        if len(zetas) < 2:
-            return self._at_steps
-        factor = Add(*(c * _power(d, w) for d, c in zetas.items()))
-        return [(S.One, S.One, factor), *self._at_steps[len(zetas) :]]
+        terms = [(step, c, functions.value(S.One, w, a)) for step, a, c in self._at_steps[len(self.unit.zeta) :]]
+        terms += [(d, c, dirichlet_eta(w)) for d, c in self.unit.eta.items()]
+        terms += [(r.step, r.coefficient, functions.value(r.z, w, r.a)) for r in self.alternating + self.lerch]
+        total = _common_step(terms, w)
+        return Add(_weighted(self.unit.zeta, w, zeta(w)), total) if self.unit.zeta else total
 
     def _at_integer(self, w: int) -> Expr:
         """At a whole w > 1: reflection where it applies."""
@@ -179,6 +171,24 @@ class _Level:
             coefficients[place] = self._finite_part_at_one()
             result = Series(first, tuple(coefficients))
         return result
+
+
+def _weighted(weights: dict[Rational, Expr], w: Expr, function: Expr) -> Expr:
+    """The Dirichlet polynomial times a function, its first coefficient and a common power taken out."""
+    (first, front) = next(iter(weights.items()))
+    ratios = [(c / front).expand() for c in weights.values()]
+    polynomial = Add(*(c * _power(d / first, w) for d, c in zip(weights, ratios, strict=True)))
+    return Mul(front, _power(first, w), polynomial, function)
+
+
+def _common_step(terms: Sequence[tuple[Expr, Expr, Expr]], w: Expr) -> Expr:
+    """``sum c*step**(-w)*value`` with a power that all terms share in front."""
+    if not terms:
+        return S.Zero
+    step = terms[0][0]
+    if any(other != step for other, _, _ in terms):
+        return Add(*(c * _power(d, w) * v for d, c, v in terms))
+    return Mul(_power(step, w), Add(*(c * v for _, c, v in terms)))
 
 
 def _power(step: Expr, w: Expr) -> Expr:

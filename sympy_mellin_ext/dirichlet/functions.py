@@ -10,6 +10,7 @@ from sympy import (
     Expr,
     I,
     Integer,
+    Pow,
     Rational,
     S,
     Symbol,
@@ -44,8 +45,13 @@ def value(z: Expr, w: Expr, a: Expr) -> Expr:
     if w.is_Integer and w.is_nonpositive:
         return _rational(z, -int(w), a)
     if a is S.One:
-        return -log(1 - z) / z if w is S.One else polylog(w, z) / z
+        return -log(1 - z) / z if w is S.One else _polylog(w, z) / z
     return lerchphi(z, w, a)
+
+
+def _polylog(w: Expr, z: Expr) -> Expr:
+    # SymPy's own evaluation asks whether z equals 1, which may take a second
+    return polylog(w, z, evaluate=not z.free_symbols)
 
 
 def alternating(w: Expr, a: Expr) -> Expr:
@@ -55,7 +61,7 @@ def alternating(w: Expr, a: Expr) -> Expr:
     low, high = (a / 2).expand(), ((a + 1) / 2).expand()
     if w is S.One:
         return (digamma(high) - digamma(low)) / 2
-    total = 2 ** (-w) * (zeta(w, low) - zeta(w, high))
+    total = Pow(2, -w) * (zeta(w, low) - zeta(w, high))
     return total.expand() if w.is_Integer and w.is_nonpositive else total
 
 

@@ -9,15 +9,20 @@ techniques (2006), section 1; P. Flajolet, X. Gourdon, P. Dumas, Mellin transfor
 """
 from __future__ import annotations
 
+from dataclasses import replace
+
 from sympy import Expr, Symbol
 
 from ..closed_form import ClosedForm, Step
 from ..dirichlet import NoClosedForm
+from ..dirichlet.forms import shortest
 from ..dirichlet.reader import SeriesReader, has_exponential_series
 from ..matching.waves import finish
 from ..pieces import Piece
 from ..problem import Problem
-from .master_theorem import closed_form_of_pieces
+from ..region import Region
+from .finite_part import Edge
+from .master_theorem import closed_form_of_pieces, special_values
 
 _SOURCE = "DLMF 25.5.1, 25.11.25, 25.12.11, 25.14.5"
 
@@ -65,7 +70,27 @@ def _closed_form(problem: Problem, expansions: list, plain: list, name: str) -> 
     steps = [
         Step("series of exponentials, transform in s", _SOURCE, _transform(p, u)) for p in pieces if p.dirichlet
     ]
-    return closed_form_of_pieces(problem, pieces, name, (_SOURCE,), tuple(steps))
+    answer = closed_form_of_pieces(problem, pieces, name, (_SOURCE,), tuple(steps))
+    return None if answer is None else _finished(_with_removable(problem, pieces, answer))
+
+
+def _with_removable(problem: Problem, pieces: list[Piece], answer: ClosedForm) -> ClosedForm:
+    """Add the values where poles of single Dirichlet series cancel, so that their formula reads oo - oo."""
+    exponents = [
+        (p.power - p.ratio * u).expand() for p in pieces for d in p.dirichlet for u in d.removable()  # type: ignore[attr-defined]
+    ]
+    if not any(e.free_symbols for e in exponents):
+        return answer
+    region = Region(problem.facts).holds(answer.condition)
+    special = special_values(pieces, Edge(cancelled=exponents), Edge(), region)
+    known = [where for where, _ in answer.special]
+    return replace(answer, special=(*answer.special, *(s for s in special if s[0] not in known)))
+
+
+def _finished(answer: ClosedForm) -> ClosedForm:
+    return replace(
+        answer, value=shortest(answer.value), special=tuple((where, shortest(v)) for where, v in answer.special)
+    )
 
 
 def _transform(piece: Piece, u: Symbol) -> Expr:

@@ -112,7 +112,7 @@ def closed_form_of_pieces(
         name,
         (*steps, Step("finite parts added" if several else "master theorem", _SUM_SOURCE if several else _THEOREM_SOURCE, value)),
         (*sources, _SUM_SOURCE if several else _THEOREM_SOURCE),
-        _special_values(pieces, at_zero, at_infinity, region),
+        special_values(pieces, at_zero, at_infinity, region),
     )
 
 
@@ -123,7 +123,7 @@ def strip_of(at_zero: Edge, at_infinity: Edge, reference: Expr) -> tuple[Expr, E
     return (Max(*lower) if lower else -oo), (Min(*upper) if upper else oo)
 
 
-def _special_values(
+def special_values(
     pieces: Sequence[Piece], at_zero: Edge, at_infinity: Edge, region: Region
 ) -> tuple[tuple[Boolean, Expr], ...]:
     """Values where poles of single pieces cancel inside the region: the formula reads oo - oo there."""

@@ -38,10 +38,11 @@ def _load() -> tuple[Strategy, ...]:
     global _strategies
     with _lock:
         if _strategies is None:
-            from . import master_theorem, mellin_barnes, ranges, taylor
+            from . import exponential_series, master_theorem, mellin_barnes, ranges, taylor
 
             found: list[Strategy] = [
                 *master_theorem.STRATEGIES,
+                *exponential_series.STRATEGIES,
                 *mellin_barnes.STRATEGIES,
                 *taylor.STRATEGIES,
                 *ranges.STRATEGIES,
