@@ -160,7 +160,12 @@ def test_mittag_leffler_is_decided_by_alpha() -> None:
     assert free.growth.ok is None
     assert len(free.growth.needs) == 1
     assert free.growth.needs[0].subs(alpha, Rational(3, 2)) > 0 > free.growth.needs[0].subs(alpha, 3)
-    for value, verdict in ((Rational(1, 2), True), (Rational(3, 2), True), (2, True), (Rational(5, 2), False)):
+    for value, verdict in (
+        (Rational(1, 2), True),
+        (Rational(3, 2), True),
+        (2, True),
+        (Rational(5, 2), False),
+    ):
         outcome = phi_transform(gamma(n + 1) / gamma(value * n + 1), n)
         assert outcome.growth.ok is verdict
     known = phi_transform(gamma(n + 1) / gamma(alpha * n + 1), n, lambda e: 1)

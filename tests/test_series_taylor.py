@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
+
 import mpmath
 import pytest
 from sympy import (
@@ -45,10 +47,10 @@ FUNCTIONS = [
     ((sqrt(1 + x**2) - x) ** k, 0.9),
     ((sqrt(1 + x**2) - x) ** k / sqrt(1 + x**2), 1.3),
     ((1 + sqrt(1 + a * x)) ** (-k), 0.4),
-    ((x + sqrt(1 + x)) ** 0 * exp(-k * asinh(sqrt(x))), 0.5),
+    (exp(-k * asinh(sqrt(x))), 0.5),
     ((1 + x + sqrt(x**2 + 2 * x)) ** (-k), 0.7),
     (exp(-k * asinh(1 / x)), -0.8),
-    (1 / (sqrt(x) + sqrt(1 + x)), 0.3),
+    (1 / (sqrt(x) + sqrt(1 + x)), 0.25),
     (asinh(x) ** 2, -1.1),
     (asinh(x) / x, 0.4),
     (airyai(x) ** 2, 1.7),
@@ -58,15 +60,12 @@ FUNCTIONS = [
     (exp(-x) * besseli(nu, x), 0.1),
     (exp(-a * x) * besselk(nu, a * x), 1.4),
     (besselj(nu, a * x) * besselk(nu, a * x), 1.3),
-    (besselj(1, x) * besselk(1, x), 0.9),
     (besseli(nu, x) * besselk(nu, x), 0.5),
     (besselk(nu, x) ** 2, 2.3),
     (exp(-x) * sin(x), 0.8),
     (exp(-x) * (cos(x) + sin(x)), 1.1),
     (exp(-a * x) * cos(a * x), 0.8),
     (exp(-x / 2) * sin(sqrt(3) * x / 2), 1.4),
-    (exp(x**2) * erfc(x), 0.6),
-    (exp(x) * erfc(sqrt(x)), 0.2),
     (1 / (x**2 + x + 1), 0.7),
     (exp(-(x ** Rational(1, 3))), 0.9),
 ]
@@ -74,23 +73,31 @@ FUNCTIONS = [
 
 def quadrature(f: Expr, at: float) -> float:
     """``int x**(at-1)*f`` after ``x = exp(u)``; f is evaluated with room for cancellation."""
-    g = lambdify(x, f.subs(VALUES), "mpmath")
-    with mpmath.workdps(60):
+    g = evaluator(f)
+    reach = 60 if f.has(airyai, airyaiprime, besseli, besselj, besselk) else 120
+    with mpmath.workdps(130):
 
         def integrand(u: mpmath.mpf) -> mpmath.mpf:
-            point = mpmath.exp(u)
+            with mpmath.workdps(20 if reach == 60 else 130):
+                point = mpmath.exp(u)
             # beyond this a decaying integrand is below every digit asked for, but slow to evaluate
             if point > 1e3 and f.has(airyai, airyaiprime, besselj, exp) and decays(f):
                 return mpmath.mpf(0)
-            return mpmath.exp(u * mpmath.mpf(at)) * g(point)
+            with mpmath.workdps(40 if reach == 60 else 130):
+                return mpmath.exp(u * mpmath.mpf(at)) * g(point)
 
-        marks = [-90, -40, -20, -10, -5, -2, 0, 1, 2, 3, 4, 5, 7, 10, 20, 40, 60]
-        with mpmath.workdps(30):
+        marks = [-reach, -40, -20, -10, -5, -2, 0, 1, 2, 3, 4, 5, 7, 10, 20, 40, reach]
+        with mpmath.workdps(20):
             return float(mpmath.quad(integrand, marks, maxdegree=7).real)
 
 
+def evaluator(f: Expr) -> Callable[[mpmath.mpf], mpmath.mpf]:
+    own = {"airyaiprime": lambda z: mpmath.airyai(z, derivative=1)}
+    return lambdify(x, f.subs(VALUES), [own, "mpmath"])
+
+
 def decays(f: Expr) -> bool:
-    value = lambdify(x, f.subs(VALUES), "mpmath")(mpmath.mpf(300))
+    value = evaluator(f)(mpmath.mpf(300))
     return bool(abs(value) < mpmath.mpf(10) ** -30)
 
 
@@ -103,7 +110,7 @@ def test_against_quadrature(f: Expr, at: float) -> None:
     assert all(at < h for h in right)
     value = lambdify(s, found.product.at(s).subs(VALUES), "mpmath")(mpmath.mpf(at))
     assert float(value) == pytest.approx(quadrature(f, at), rel=1e-9)
-    assert [name for name, _ in found.steps][0].startswith("differential equation")
+    assert found.steps[0][0].startswith("differential equation")
 
 
 PUBLISHED = [
@@ -113,12 +120,18 @@ PUBLISHED = [
         2 * gamma(s) / (sqrt(pi) * 12 ** ((2 * s + 5) / 6) * gamma(s / 3 + Rational(5, 6))),
         "DLMF 9.11.15",
     ),
-    (exp(-x) * besselk(nu, x), sqrt(pi) * gamma(s + nu) * gamma(s - nu) / (2**s * gamma(s + S.Half)), "DLMF 10.43.22"),
+    (
+        exp(-x) * besselk(nu, x),
+        sqrt(pi) * gamma(s + nu) * gamma(s - nu) / (2**s * gamma(s + S.Half)),
+        "from memory: DLMF 10.43(iv)",
+    ),
     (
         besselk(nu, x) ** 2,
         2 ** (s - 3) / gamma(s) * gamma(s / 2 + nu) * gamma(s / 2) ** 2 * gamma(s / 2 - nu),
-        "DLMF 10.43.28",
+        "from memory: DLMF 10.43(iv)",
     ),
+    (exp(x) * erfc(sqrt(x)), gamma(s) / cos(pi * s), "DLMF 13.10.11 with a = b = 1/2, and 13.6.8"),
+    (exp(x**2) * erfc(x), gamma(s / 2) / (2 * cos(pi * s / 2)), "DLMF 13.10.11 with a = b = 1/2, and 13.6.8"),
     (exp(-x) * sin(x), 2 ** (-s / 2) * gamma(s) * sin(pi * s / 4), "DLMF 5.9.7 with a complex scale"),
     (exp(-x) * cos(x), 2 ** (-s / 2) * gamma(s) * cos(pi * s / 4), "DLMF 5.9.6 with a complex scale"),
 ]
@@ -198,14 +211,33 @@ def test_hypergeometric_pieces_on_the_unit_interval(f: Expr, at: float) -> None:
     near = sum(
         complex(p.coefficient.subs(VALUES))
         * 0.4 ** float(p.exponent)
-        * mpmath.hyper([q.subs(VALUES) for q in p.upper], [q.subs(VALUES) for q in p.lower], float(p.argument) * 0.4**p.step)
+        * mpmath.hyper(
+            [q.subs(VALUES) for q in p.upper],
+            [q.subs(VALUES) for q in p.lower],
+            float(p.argument) * 0.4**p.step,
+        )
         for p in found
     )
     assert complex(near) == pytest.approx(complex(g(0.4)), rel=1e-12)
     value = sum(p.moment(Rational(str(at))) for p in found).subs(VALUES).evalf(15)
-    with mpmath.workdps(30):
-        wanted = mpmath.quad(lambda u: mpmath.sin(u) ** (mpmath.mpf(str(at)) - 1) * mpmath.cos(u) * g(mpmath.sin(u)), [0, 1, mpmath.pi / 2])
+
+    def integrand(u: mpmath.mpf) -> mpmath.mpf:
+        with mpmath.workdps(90):
+            point = mpmath.cos(u)
+            return point ** (mpmath.mpf(str(at)) - 1) * mpmath.sin(u) * g(point)
+
+    with mpmath.workdps(20):
+        wanted = mpmath.quad(integrand, [0, 1, mpmath.pi / 2])
     assert complex(value) == pytest.approx(complex(wanted), rel=1e-8)
+
+
+def test_integer_order_by_continuation() -> None:
+    """K_1 has a logarithm at 0: the order is made generic, and put back at the end."""
+    found = taylor_transform(besselj(1, x) * besselk(1, x), x)
+    assert found is not None
+    assert found.product.as_expr(s).free_symbols == {s}
+    wanted = mpmath.quad(lambda v: v**-0.1 * mpmath.besselj(1, v) * mpmath.besselk(1, v), [0, 1, 5, 20, 45])
+    assert float(found.product.at(S(9) / 10).evalf()) == pytest.approx(float(wanted), rel=1e-8)
 
 
 def test_constants_come_out_short() -> None:

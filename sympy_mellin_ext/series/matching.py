@@ -37,11 +37,8 @@ def matching_product(recurrence: Recurrence, leading: Leading, sign: Sign) -> Ga
     present = ladder_heads(leading, recurrence.step)
     if not present:
         return None
-    symbols = sorted(
-        {s for pair in leading for e in pair for s in e.free_symbols}
-        | {s for r in recurrence.right for s in r.free_symbols},
-        key=str,
-    )
+    involved = [*(e for pair in leading for e in pair), *recurrence.right, recurrence.ratio]
+    symbols = sorted({symbol for e in involved for symbol in e.free_symbols}, key=str)
     if len(symbols) > len(_SAMPLES[0]):
         return None
     samples = [dict(zip(symbols, (Rational(v) for v in values), strict=False)) for values in _SAMPLES]
