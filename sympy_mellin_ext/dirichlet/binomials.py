@@ -5,7 +5,7 @@ from collections.abc import Sequence
 from typing import NamedTuple
 
 from sympy import Abs, Expr, I, Integer, Poly, Rational, S, cancel, cos, divisors, exp, pi, sqrt, symbols
-from sympy.functions.combinatorial.numbers import mobius
+from sympy.functions.combinatorial.numbers import mobius, totient
 from sympy.logic.boolalg import And, Boolean
 
 from ..region import Facts
@@ -84,12 +84,14 @@ def off_the_cut(z: Expr, facts: Facts) -> Boolean | None:
         return z < 1
     if z.is_number:
         return S.true if z.is_real is False and z.is_finite else None
-    turned = -z
-    if isinstance(turned, exp):
-        angle = turned.args[0] / I
-        if angle.is_extended_real and facts.sign(angle) != 0:
-            magnitude = angle if facts.sign(angle) == 1 else -angle if facts.sign(angle) == -1 else Abs(angle)
-            return magnitude < pi
+    for sign in (1, -1):
+        if isinstance(sign * z, exp):
+            angle = (sign * z).args[0] / I
+            if not angle.is_extended_real:
+                continue
+            known = facts.sign(angle)
+            magnitude = angle if known == 1 else -angle if known == -1 else Abs(angle)
+            return magnitude < pi if sign == -1 else And(magnitude > 0, magnitude < 2 * pi)
     return None
 
 
@@ -131,7 +133,7 @@ def _rational_roots(coefficients: Sequence[Expr], unit: Expr) -> tuple[tuple[Exp
     powers: dict[tuple[Expr, Expr], int] = {}
     for factor, n in Poly(list(reversed(coefficients)), q).factor_list()[1]:
         order = _cyclotomic_order(factor)
-        if factor.degree() > 1 and order is not None:
+        if order is not None:
             # Phi_n(q) = prod_{d | n} (1 - q**d)**mu(n/d) for n > 1
             found = [(S.One, d, int(mobius(Integer(order) / d)) * n) for d in divisors(order)]
         elif factor.degree() == 1:
@@ -152,14 +154,14 @@ def _rational_roots(coefficients: Sequence[Expr], unit: Expr) -> tuple[tuple[Exp
 
 
 def _cyclotomic_order(factor: Poly) -> int | None:
-    if not factor.is_cyclotomic:
+    if factor.degree() < 2 or not factor.is_cyclotomic:
         return None
     from sympy import cyclotomic_poly
 
-    degree = factor.degree()
-    for n in range(1, 6 * degree + 7):
-        candidate = cyclotomic_poly(n, factor.gen, polys=True)
-        if candidate.degree() == degree and candidate.set_domain(factor.domain) == factor.monic():
+    degree, coefficients = factor.degree(), factor.all_coeffs()
+    # phi(n) >= sqrt(n/2) bounds the order
+    for n in range(3, 2 * degree**2 + 1):
+        if totient(n) == degree and cyclotomic_poly(n, factor.gen, polys=True).all_coeffs() == coefficients:
             return n
     return None
 
@@ -167,9 +169,10 @@ def _cyclotomic_order(factor: Poly) -> int | None:
 def _quadratic_roots(c1: Expr, c2: Expr, unit: Expr) -> tuple[tuple[Expr, Expr, int], ...] | None:
     """``1 + c1*q + c2*q**2 = (1 - z1*q)*(1 - z2*q)``; 1 + 2*cos(t)*q + q**2 has z = -exp(+-I*t)."""
     half = c1 / 2
-    if c2 is S.One and isinstance(half, cos) and not half.is_number:
-        t = half.args[0]
-        return ((-exp(I * t), unit, 1), (-exp(-I * t), unit, 1))
+    for sign in (1, -1):
+        if c2 is S.One and isinstance(sign * half, cos) and not half.is_number:
+            t = (sign * half).args[0]
+            return ((-sign * exp(I * t), unit, 1), (-sign * exp(-I * t), unit, 1))
     discriminant = (half**2 - c2).expand()
     if discriminant is S.Zero:
         return ((-half, unit, 2),)

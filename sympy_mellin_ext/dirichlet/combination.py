@@ -6,7 +6,7 @@ from dataclasses import dataclass
 from functools import cached_property
 from typing import NamedTuple
 
-from sympy import Add, Catalan, Expr, Integer, Mul, Pow, Rational, S, digamma, dirichlet_eta, exp, log, pi, zeta
+from sympy import Add, Catalan, Expr, I, Integer, Mul, Pow, Rational, S, cos, digamma, dirichlet_eta, exp, factorial, ilcm, log, pi, sin, zeta
 
 from ..gamma.laurent import Series, multiply, power_series
 from . import functions
@@ -140,6 +140,20 @@ class _Level:
         terms += _inverted(1, self.lerch)
         return Add(*terms)
 
+    def _vanishing_part(self, w: Expr, rate: Expr, terms: int) -> Series | None:
+        """The two first coefficients of the periodic part at a negative whole w where parity makes it vanish."""
+        if terms != 2 or not (w.is_Integer and w.is_negative) or not self.unit.hurwitz:
+            return None
+        total: Expr = S.Zero
+        for step in sorted({step for step, _ in self.unit.hurwitz}):
+            part = {a: c for (d, a), c in self.unit.hurwitz.items() if d == step}
+            period = ilcm(*(a.q for a in part)) if len(part) > 1 else next(iter(part)).q
+            slope = _derivative_at_zero({int(a * period): c for a, c in part.items()}, int(period), -int(w))
+            if slope is None:
+                return None
+            total += step ** (-w) * slope
+        return Series(0, (S.Zero, rate * total))
+
     # -- series --------------------------------------------------------------------------------------------
 
     def laurent(self, w: Expr, rate: Expr, terms: int) -> Series:
@@ -148,10 +162,14 @@ class _Level:
         count = terms + 1 if at_pole and first == 0 else terms
         if first == 0 and terms == 1:
             return Series(0, (self.at(w),))
+        vanishing = self._vanishing_part(w, rate, terms)
         parts = [
             _stepped(functions.hurwitz_series(w, rate, a, count), step, w, rate, count).times(c)
             for step, a, c in self._at_steps
+            if vanishing is None or (step, a) not in self.unit.hurwitz
         ]
+        if vanishing is not None:
+            parts.append(vanishing)
         # with the pole cancelled the single ones start one place early
         total = _added(parts, count) if parts else Series(0, (S.Zero,) * terms)
         if at_pole and first == 0 and parts:
@@ -171,6 +189,27 @@ class _Level:
             coefficients[place] = self._finite_part_at_one()
             result = Series(first, tuple(coefficients))
         return result
+
+
+def _derivative_at_zero(coefficients: dict[int, Expr], period: int, m: int) -> Expr | None:
+    """Derivative at ``w = -m`` of ``sum c(r)*zeta(w, r/N)`` where parity makes the value vanish, m > 0.
+
+    From Hurwitz' formula, DLMF 25.11.9, with ``sum_n sin(2*pi*n*r/N)/n**k`` as Hurwitz zeta functions at k.
+    None where c is neither odd (m odd) nor even (m even) under r -> N - r.
+    """
+    parity = S.NegativeOne**m
+    for r, c in coefficients.items():
+        mirror = coefficients.get(period - r, S.Zero) if r != period else c
+        if (mirror - parity * c).expand() is not S.Zero or (r == period and m % 2):
+            return None
+    wave = sin if m % 2 else cos
+    k = Integer(m + 1)
+    items = [
+        (Integer(period), Rational(j, period), Add(*(c * wave(2 * pi * j * r / period) for r, c in coefficients.items())))
+        for j in range(1, period + 1)
+    ]
+    total = Add(*_reflected(S.One, int(k), [(step, a, c) for step, a, c in items if c is not S.Zero]))
+    return factorial(m) * S.NegativeOne ** (m // 2) * total / (2 * (2 * pi) ** m)
 
 
 def _weighted(weights: dict[Rational, Expr], w: Expr, function: Expr) -> Expr:
@@ -294,12 +333,19 @@ def _plain(row: Row, w: int) -> Expr:
 
 
 def _log_of_minus(z: Expr) -> Expr | None:
-    """``log(-z)`` for ``z = -exp(v)`` with v real, or imaginary of modulus below pi as the caller has required."""
+    """``log(-z)`` for ``z = -exp(v)`` with v real or imaginary, or ``z = exp(I*t)``.
+
+    The phases are below pi and between 0 and 2*pi: nothing else passes as a root off the half line.
+    """
     other = -z
     if isinstance(other, exp):
         v = other.args[0]
-        if v.is_extended_real or v.is_imaginary or (v / S.ImaginaryUnit).is_extended_real:
+        if v.is_extended_real or (v / I).is_extended_real:
             return v
+    elif isinstance(z, exp):
+        t = z.args[0] / I
+        if t.is_extended_real:
+            return I * (t + pi if t.could_extract_minus_sign() else t - pi)
     elif other.is_positive:
         return log(other)
     return None

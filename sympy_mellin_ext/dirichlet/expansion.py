@@ -107,7 +107,8 @@ def _take(
     if split is None:
         raise Unsupported("roots of a sum of exponentials")
     if factor.positive:
-        if facts.sign(split.front) != 1 or any(not z.is_extended_real for z, _, _ in split.factors):
+        # no root lies on the half line, so that the sign at oo is the sign throughout
+        if facts.sign(split.front) != 1:
             raise Unsupported("a power of a base that may be negative")
     result.condition = And(result.condition, split.condition)
     n = factor.power
@@ -192,10 +193,11 @@ def _separated(
 
 def _gap(u: Expr, v: Expr) -> tuple[Expr, bool]:
     """``u - v``; a difference of conjugate phases as a sine, and whether it is one."""
-    if isinstance(-u, exp) and isinstance(-v, exp):
-        angle = (-u).args[0] / I
-        if (-v).args[0] == -(-u).args[0] and angle.is_extended_real:
-            return -2 * I * sin(angle), True
+    for sign in (1, -1):
+        if isinstance(sign * u, exp) and isinstance(sign * v, exp):
+            angle = (sign * u).args[0] / I
+            if (sign * v).args[0] == -(sign * u).args[0] and angle.is_extended_real:
+                return sign * 2 * I * sin(angle), True
     return u - v, False
 
 

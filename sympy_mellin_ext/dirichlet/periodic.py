@@ -29,11 +29,36 @@ class Periodic:
     hurwitz: dict[tuple[Rational, Rational], Expr] = field(default_factory=dict)
 
 
-def periodic(rows: Sequence[tuple[Expr, Rational, Rational, Expr]]) -> Periodic | None:
+Rows = Sequence[tuple[Expr, Rational, Rational, Expr]]
+
+
+def periodic(rows: Rows) -> Periodic | None:
     """Rows (z, step, a, c): ``c*step**(-w)*Phi(z, w, a)`` with z = +1 or -1 and 0 < a <= 1.
 
-    None if the common period is too long.
+    None if a common period is too long.
     """
+    together = _periodic(rows)
+    if together is not None and not together.hurwitz:
+        return together
+    steps = sorted({step for _, step, _, _ in rows})
+    if len(steps) == 1:
+        return together
+    # no common form: one scale at a time, unless that takes more functions
+    apart = Periodic()
+    for step in steps:
+        part = _periodic([row for row in rows if row[1] == step])
+        if part is None:
+            return together
+        for name in ("zeta", "eta", "hurwitz"):
+            target = getattr(apart, name)
+            for key, c in getattr(part, name).items():
+                target[key] = target.get(key, S.Zero) + c
+    if together is None or len(apart.hurwitz) <= len(together.hurwitz):
+        return apart
+    return together
+
+
+def _periodic(rows: Rows) -> Periodic | None:
     progressions: list[tuple[Rational, Rational, Expr]] = []  # first term, step, coefficient
     for z, step, a, c in rows:
         if z is S.One:

@@ -15,6 +15,7 @@ from sympy.core.sorting import default_sort_key
 from sympy.logic.boolalg import Boolean
 
 from ..closed_form import ClosedForm, Step
+from ..dirichlet import NoClosedForm
 from ..gamma.shortest import positive_power
 from ..matching import Term, read_terms
 from ..pieces import Piece
@@ -138,7 +139,10 @@ def special_values(
             inside = region.to_boolean().subs(symbol, point)
             if inside == False:  # noqa: E712 - SymPy Boolean
                 break
-            value = total_value([piece.subs(symbol, point) for piece in pieces])
+            try:
+                value = total_value([piece.subs(symbol, point) for piece in pieces])
+            except NoClosedForm:
+                break
             where = Eq(symbol, point)
             if where is not S.false and not value.has(S.NaN, S.ComplexInfinity):
                 special.append((where, value))
