@@ -47,7 +47,7 @@ def integrate(f: Any, *limits: Any, given: Given = (), **hints: Any) -> Any:
     """
     if all(name == "conds" or name in STOCK_METHODS for name in hints):
         outcome = try_strategies(f, limits, given, hints)
-        if outcome.found:
+        if outcome.closed is not None:
             return outcome.answer
         if outcome.question is not None:
             with refused(*outcome.question):
@@ -60,17 +60,17 @@ class Outcome(NamedTuple):
 
     Attributes
     ----------
+    closed : ClosedForm, or None
     answer :
-        In the form that ``conds`` asks for.
-    found : bool
+        The closed form as ``conds`` asks for it.
     question : tuple (f, limits), or None
         The integral as it was understood; None if it was not one of ours to begin with.
     divergent : bool
         Whether the integral was shown to diverge.
     """
 
+    closed: ClosedForm | None = None
     answer: Any = None
-    found: bool = False
     question: tuple[Expr, tuple[Tuple, ...]] | None = None
     divergent: bool = False
 
@@ -110,8 +110,9 @@ def try_strategies(
     if answer is None:
         return Outcome(question=question, divergent=diagnosis.divergent)
     if conds == "piecewise":
-        return Outcome(answer.as_piecewise(nested), True, question)
-    return Outcome(answer.value if conds == "none" else (answer.value, answer.condition), True, question)
+        return Outcome(answer, answer.as_piecewise(nested), question)
+    bare = answer.value if conds == "none" else (answer.value, answer.condition)
+    return Outcome(answer, bare, question)
 
 
 def _read(f: Any, limits: tuple[Any, ...]) -> tuple[Expr, Symbol, Expr, Expr] | None:

@@ -87,7 +87,7 @@ def _dispatcher(original: Callable[..., Any]) -> Callable[..., Any]:
             outcome = try_strategies(f, self.limits, (), hints, nested=True)
         finally:
             _busy.reset(token)
-        if outcome.found:
+        if outcome.closed is not None:
             return outcome.answer
         if outcome.question is None:
             return original(self, **hints)

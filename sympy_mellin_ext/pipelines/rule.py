@@ -4,6 +4,7 @@ from __future__ import annotations
 from typing import Any
 
 from sympy import Basic, Integral, Piecewise
+from sympy.strategies.rl import rebuild
 
 from ..integrate import try_strategies
 
@@ -35,25 +36,38 @@ def evaluate_integrals(expr: Any) -> Any:
     >>> evaluate_integrals(Eq(f(y), y*Integral(exp(-a*x**2), (x, 0, oo)) + Integral(f(x), (x, 0, y))))
     Eq(f(y), Integral(f(x), (x, 0, y)) + sqrt(pi)*y/(2*sqrt(a)))
     """
-    if not isinstance(expr, Basic) or not expr.has(Integral):
+    return _rewrite(expr, frozenset()) if isinstance(expr, Basic) else expr
+
+
+def _rewrite(expr: Basic, excluded: frozenset[Basic]) -> Basic:
+    """Rewrite where the ``excluded`` conditions do not hold: those of earlier branches of a Piecewise.
+
+    The integral in the last branch of our own answer is left alone in this way, and so is what powers and
+    products make of that answer.
+    """
+    if not expr.has(Integral):
         return expr
-    if isinstance(expr, Piecewise) and _is_done(expr):
-        return expr
-    args = [evaluate_integrals(arg) for arg in expr.args]
+    if isinstance(expr, Piecewise):
+        return _branches(expr, excluded)
+    args = [_rewrite(arg, excluded) for arg in expr.args]
     if any(new is not old for new, old in zip(args, expr.args, strict=True)):
         expr = expr.func(*args)
     if type(expr) is not Integral:
         return expr
-    outcome = try_strategies(expr.function, expr.limits, (), {})
-    return outcome.answer if outcome.found else expr
+    # the traversals of sympy.strategies put trees together without SymPy's constructors
+    f, *limits = (rebuild(arg) for arg in expr.args)
+    outcome = try_strategies(f, tuple(limits), (), {})
+    return expr if outcome.closed is None or outcome.closed.condition in excluded else outcome.answer
 
 
-def _is_done(expr: Piecewise) -> bool:
-    """Whether this is what the integral in its last branch becomes, which holds it again."""
-    last = expr.args[-1][0]
-    if type(last) is not Integral or expr.args[-1][1] != True:  # noqa: E712 - SymPy Boolean
-        return False
-    for nested in (False, True):
-        if try_strategies(last.function, last.limits, (), {}, nested).answer == expr:
-            return True
-    return False
+def _branches(expr: Piecewise, excluded: frozenset[Basic]) -> Basic:
+    branches = []
+    for value, condition in expr.args:
+        if condition in excluded:  # a traversal bottom-up has put our answer into itself
+            continue
+        branches.append((_rewrite(value, excluded), condition))
+        excluded |= {condition}
+    if not branches or len(branches) == len(expr.args) and all(b[0] is old[0] for b, old in zip(branches, expr.args, strict=True)):
+        return expr
+    value, condition = branches[0]
+    return value if condition == True else Piecewise(*branches)  # noqa: E712 - SymPy Boolean
