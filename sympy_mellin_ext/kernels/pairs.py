@@ -7,6 +7,7 @@ from dataclasses import dataclass
 from sympy import Expr, Integer, Rational, S, cos, gamma, pi, sqrt
 
 from ..gamma import GammaProduct
+from .general import hyper_transform
 
 _H = Rational(1, 2)
 of = GammaProduct.of
@@ -57,6 +58,7 @@ PAIRS = (
         lambda nu: of(up=[(nu, 1), (_H, -1)], down=[(1 + nu, -1)], constant=1 / sqrt(pi), scale=2),
         "DLMF 10.43.23-type; from memory: Gradshteyn-Ryzhik 6.623.3",
     ),
+    Pair(("exp", "turned 1F1"), lambda a, b: hyper_transform((b - a,), (b,)), "DLMF 13.2.39"),
     Pair(
         ("exp", "besselk"),
         lambda nu: of(up=[(nu, 1), (-nu, 1)], down=[(_H, 1)], constant=sqrt(pi), scale=2),

@@ -56,7 +56,7 @@ class Row:
 
 
 @cache
-def pairs() -> dict[tuple[str, str], tuple[Pair, ...]]:
+def pair_rows() -> dict[tuple[str, str], tuple[Pair, ...]]:
     """The rows for products of two functions of one argument, by their names."""
     from .pairs import PAIRS
 

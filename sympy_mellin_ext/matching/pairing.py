@@ -7,7 +7,7 @@ from sympy import Integer, S, pi
 
 from ..gamma import GammaProduct
 from ..gamma.tilt import Tilt, TiltedFactor
-from ..kernels import pairs
+from ..kernels import pair_rows
 from ..kernels.elementary import power as power_transform
 from ..kernels.pairs import Pair
 from .term import Kernel
@@ -93,7 +93,7 @@ def _merge_logarithms(kernels: tuple[Kernel, ...]) -> tuple[Kernel, ...]:
 
 
 def _pair(first: Kernel, second: Kernel) -> Kernel | None:
-    for row in pairs().get((first.name, second.name), ()):
+    for row in pair_rows().get((first.name, second.name), ()):
         kernel = _apply(row, first, second)
         if kernel is not None:
             return kernel
@@ -104,7 +104,10 @@ def _apply(row: Pair, first: Kernel, second: Kernel) -> Kernel | None:
     turned = first.name == "exp" and first.wave is not None
     if turned != row.turned or (turned and first.wave.angle != pi):  # type: ignore[union-attr]
         return None
-    if first.ratio != row.square * second.ratio or not (first.inside or turned):
+    if first.ratio != row.square * second.ratio:
+        return None
+    # the rows are for these functions themselves, not for turned scales (I_nu is kept as J_nu turned)
+    if any(k.wave is not None and k.name != "besseli" for k in (first, second)) and not turned:
         return None
     scale = second.product.scale * _SCALES.get(second.name, 1)
     other = first.product.scale * _SCALES.get(first.name, 1)
