@@ -72,7 +72,9 @@ def _dispatch(problem: Problem) -> ClosedForm | None:
     if upper is oo:
         return finite.on_tail(problem)
     if f.has(*circular.CIRCULAR) and circular.is_circular(f, x):
-        return circular.on_quarters(problem)
+        answer = circular.on_quarters(problem)
+        if answer is not None or finite.shown_divergent(problem):
+            return answer
     return finite.on_finite(problem)
 
 

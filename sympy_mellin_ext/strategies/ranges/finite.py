@@ -32,6 +32,11 @@ def handed_on(
     return answer
 
 
+def shown_divergent(problem: Problem) -> bool:
+    """Whether somebody has shown that this integral diverges; known only where refusals are collected."""
+    return problem.diagnosis is not None and problem.depth in problem.diagnosis.proved
+
+
 def fresh(problem: Problem, **assumptions: bool) -> Dummy:
     """A new variable of integration."""
     return Dummy(problem.variable.name, **assumptions)
@@ -44,14 +49,16 @@ def doubled(problem: Problem, answer: ClosedForm | None, factor: Expr, action: s
 
 def on_unit(problem: Problem, integrand: Expr, x: Symbol) -> ClosedForm | None:
     """``int integrand dx`` over (0, 1): directly, under x -> 1 - x, or by ``x = exp(-t)``."""
-    answer = solve_unit(problem, integrand, x) or solve_unit(problem, integrand.xreplace({x: 1 - x}), x)
+    answer = solve_unit(problem, integrand, x)
+    if answer is None and not shown_divergent(problem):
+        answer = solve_unit(problem, integrand.xreplace({x: 1 - x}), x)
     if answer is None and integrand.has(acos, asin):
         # x = sqrt(1 - y): acos(x) = asin(sqrt(y))
         y = sqrt(1 - x)
         keep = Dummy()
         inner = integrand.xreplace({acos(x): keep}).xreplace({x: y}).xreplace({keep: asin(sqrt(x))}) / (2 * y)
         answer = solve_unit(problem, inner, x)
-    if answer is not None:
+    if answer is not None or shown_divergent(problem):
         return answer
     t = fresh(problem, positive=True)
     answer = handed_on(problem, integrand.xreplace({x: exp(-t)}) * exp(-t), t)

@@ -22,6 +22,7 @@ from sympy import (
     exp,
     gamma,
     hyper,
+    meijerg,
 )
 from sympy.logic.boolalg import Boolean
 
@@ -31,11 +32,13 @@ from ...inverse.pfq import put
 from ...inverse.residues import left_series
 from ...inverse.signature import normalise, power
 from ...kernels.elementary import COS, EXP, SIN
+from ...kernels.truncated import STEP, unit_power
 from ...matching.term import Kernel
 from ...matching.waves import Draft
 from ...pieces import Piece
 from ...problem import Problem
 from ...region import Facts, Region, real_part
+from ..master_theorem import closed_form_of_pieces
 from ..tidy import tidy as shortened
 from .beta import BetaTerm, convergence, total_value
 from .combined import BAD
@@ -46,6 +49,7 @@ NAME = "range (0, 1)"
 _BETA_SOURCE = "DLMF 5.12.1 with derivatives in both parameters"
 _SERIES_SOURCE = "DLMF 16.5.2"
 _MOST_FACTORS = 24
+_ALONE = ("unit acos", "unit asech")
 
 
 @dataclass
@@ -72,7 +76,29 @@ def solve_unit(problem: Problem, integrand: Expr, x: Symbol) -> ClosedForm | Non
     return problem.refuse("too many kernels", "a term has more than one kernel on (0, 1)")
 
 
+def _lone_kernels(terms: Sequence[_Term]) -> list[Piece] | None:
+    """The terms as pieces of a sum with index 0, where every one holds one truncated kernel and no log(1-x)."""
+    pieces: list[Piece] = []
+    for term in terms:
+        kernels = [k for k in term.foreign if k.name in _ALONE and not term.minus]
+        if term.unit_logs or len(term.minus) > 1 or len(kernels) != len(term.foreign):
+            return None
+        if kernels:
+            product, ratio = kernels[0].product, kernels[0].ratio
+        elif term.minus:
+            ((ratio, e),) = term.minus.items()
+            product = unit_power(e + 1)
+        else:
+            product, ratio = STEP, S.One
+        pieces.append(Piece(term.coefficient, term.power, term.logs, product, ratio))
+    return pieces
+
+
 def _sum(problem: Problem, terms: Sequence[_Term]) -> ClosedForm | None:
+    if any(t.foreign for t in terms):
+        pieces = _lone_kernels(terms)
+        if pieces is not None:
+            return closed_form_of_pieces(problem, pieces, NAME, (_BETA_SOURCE,))
     sums: dict[Expr, list[BetaTerm]] = {}
     others: list[_Term] = []
     for term in terms:
@@ -268,7 +294,7 @@ def _joint(term: _Term, facts: Facts) -> _Joint | None:
     q, p = kernel.ratio, term.power
     r, e = next(iter(term.minus.items()), (S.One, S.Zero)) if term.minus else (S.One, S.Zero)
     b = e + 1
-    if kernel.name in ("unit acos", "unit asech"):
+    if kernel.name in _ALONE:
         return None if term.minus else _lone(kernel, term)
     slope = q / r
     if not slope.is_Rational:
@@ -294,7 +320,7 @@ def _joint(term: _Term, facts: Facts) -> _Joint | None:
     rows = [*kernel.product.factors, (start, -slope, 1), (start + b, -slope, -1)]
     front = term.coefficient * kernel.product.constant * gamma(b) / r
     if known == 1:
-        value = inverse_mellin(rows, scale, facts)
+        value = _inverse(rows, scale, facts)
         return None if value is None else (front * value, conditions, positive, None)
     if slope < 0:
         return None
@@ -310,6 +336,19 @@ def _joint(term: _Term, facts: Facts) -> _Joint | None:
 def _argument(kernel: Kernel) -> Expr:
     """The scale, up to what the row keeps in it; rows with Delta = 0 keep nothing."""
     return kernel.product.scale
+
+
+def _inverse(rows: list[tuple[Expr, Rational, int]], scale: Expr, facts: Facts) -> Expr | None:
+    """The inverse transform at a positive scale; at a number the formula for every scale may be the better one."""
+    value = inverse_mellin(rows, scale, facts)
+    if scale.is_number and (value is None or value.has(hyper, meijerg)):
+        w = Dummy("w", positive=True)
+        general = inverse_mellin(rows, w, facts)
+        if general is not None and not general.has(hyper, meijerg):
+            there = general.subs(w, scale)
+            if not there.has(*BAD):
+                return there
+    return value
 
 
 def _lone(kernel: Kernel, term: _Term) -> _Joint:

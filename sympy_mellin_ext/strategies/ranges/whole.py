@@ -17,6 +17,8 @@ from sympy import (
     cosh,
     coth,
     csch,
+    erf,
+    erfc,
     exp,
     factorial2,
     log,
@@ -97,7 +99,7 @@ def gaussian(problem: Problem, f: Expr, x: Symbol) -> ClosedForm | None:
     if not any(type(node) is exp and node.has_free(x) for node in preorder_traversal(f)):
         return None
     parts = f.args if type(f) is Mul else (f,)
-    exponent, waves, rest = S.Zero, [], []
+    exponent, waves, errors, rest = S.Zero, [], [], []
     for part in parts:
         kind = type(part)
         if kind is exp:
@@ -106,9 +108,11 @@ def gaussian(problem: Problem, f: Expr, x: Symbol) -> ClosedForm | None:
             exponent += part.base.args[0] * part.exp
         elif kind in (cos, sin) and part.has_free(x):
             waves.append(part)
+        elif kind in (erf, erfc) and part.has_free(x):
+            errors.append(part)
         else:
             rest.append(part)
-    if len(waves) > 2:
+    if len(waves) > 2 or len(errors) > 1 or (waves and errors):
         return None
     quadratic = _coefficients(exponent, x, 2)
     if quadratic is None or quadratic[2] is S.Zero:
@@ -121,6 +125,8 @@ def gaussian(problem: Problem, f: Expr, x: Symbol) -> ClosedForm | None:
     c, b, a = quadratic[0], quadratic[1], -quadratic[2]
     if problem.facts.sign(real_part(a)) in (0, -1):
         return problem.refuse("diverges", "the square does not decay")
+    if errors:
+        return _error_function(problem, polynomial, a, b, c, errors[0], x)
     modes = [(S.One, S.Zero)]
     for wave in waves:
         linear = _coefficients(wave.args[0], x, 1)
@@ -142,6 +148,34 @@ def gaussian(problem: Problem, f: Expr, x: Symbol) -> ClosedForm | None:
         (Step("square completed", "DLMF 5.9.1 with x**2", value),),
         ("DLMF 5.9.1",),
     )
+
+
+def _error_function(
+    problem: Problem, polynomial: list[Expr], a: Expr, b: Expr, c: Expr, error: Expr, x: Symbol
+) -> ClosedForm | None:
+    """A normal density times erf(m*x + h): a derivative in h, then integrated from its zero; moments as derivatives in b.
+
+    ``int exp(-a*x**2 + b*x)*erf(m*x + h) dx = sqrt(pi/a)*exp(b**2/(4a))*erf((h + m*b/(2a))/sqrt(1 + m**2/a))``
+    (DLMF 7.2.1 with 5.9.1).
+    """
+    linear = _coefficients(error.args[0], x, 1)
+    if linear is None or not all(v.is_real for v in (a, b, *linear)):
+        return None
+    h, m = linear[0], linear[1]
+    q = Dummy("q", real=True)
+    plain = sqrt(pi) / sqrt(a) * exp(c + q**2 / (4 * a))
+    mean = plain * erf((h + m * q / (2 * a)) * sqrt(a) / sqrt(a + m**2))
+    if type(error) is erfc:
+        mean = plain * erfc((h + m * q / (2 * a)) * sqrt(a) / sqrt(a + m**2))
+    total: Expr = S.Zero
+    for n, p in enumerate(polynomial):
+        if n:
+            mean = mean.diff(q)
+        total += p * mean
+    value = total.xreplace({q: b})
+    condition = Region(problem.facts).positive(a).to_boolean()
+    step = Step("normal density times an error function", "DLMF 7.2.1 with 5.9.1", value)
+    return ClosedForm(value, condition, None, NAME, (step,), ("DLMF 7.2.1", "DLMF 5.9.1"))
 
 
 def _gaussian_sum(problem: Problem, f: Expr, x: Symbol) -> ClosedForm | None:
