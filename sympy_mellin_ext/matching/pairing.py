@@ -107,7 +107,7 @@ def _apply(row: Pair, first: Kernel, second: Kernel) -> Kernel | None:
     if first.ratio != row.square * second.ratio:
         return None
     # the rows are for these functions themselves, not for turned scales (I_nu is kept as J_nu turned)
-    if any(k.wave is not None and k.name != "besseli" for k in (first, second)) and not turned:
+    if any(k.wave is not None and k.name not in ("besseli", "turned 1F1") for k in (first, second)) and not turned:
         return None
     scale = second.product.scale * _SCALES.get(second.name, 1)
     other = first.product.scale * _SCALES.get(first.name, 1)

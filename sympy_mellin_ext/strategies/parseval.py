@@ -30,7 +30,6 @@ from ..gamma import Factor
 from ..gamma.product import cancel
 from ..gamma.shortest import positive_power
 from ..inverse import inverse_mellin, named_pfq
-from ..inverse.invert import ratio as gamma_ratio
 from ..inverse.residues import left_series
 from ..inverse.signature import normalise
 from ..kernels.bessel import ROWS as BESSEL_ROWS
@@ -206,7 +205,12 @@ def _joined(
         kind == "complex" and not _in_half_plane(found, d, rho)
     ):
         return None
-    moves = {node: positive_power(z, node.exp) for node in sorted(found.atoms(Pow), key=str) if node.base == d}
+    # eta1 and eta2 have their own principal powers: z**e may not be split otherwise
+    moves = {
+        node: positive_power(eta1, node.exp) * positive_power(eta2, (-rho * node.exp).expand())
+        for node in sorted(found.atoms(Pow), key=str)
+        if node.base == d
+    }
     moves[d] = z
     return front * found.xreplace(moves)
 
@@ -239,7 +243,7 @@ def _entire_series(rows: tuple[Factor, ...], wave: Wave, z: Expr) -> Expr | None
                     upper.remove(a)
                     lower.remove(a)
             f = hyper(upper, lower, sign * w)
-        parts.append((gamma_ratio(tail.coefficient), phase, tail.exponent, f))
+        parts.append((tail.coefficient, phase, tail.exponent, f))
     total = [norm.constant * c * phase * positive_power(size, e) * f.xreplace({w: size}) for c, phase, e, f in parts]
     return Add(*total)
 

@@ -33,7 +33,9 @@ def without_head(kernel: Kernel, count: int) -> tuple[Kernel, list[Term]] | None
     ladders = list(kernel.product.ladders(side))
     if len(ladders) != 1:
         return None
-    (start, step) = ladders[0]
+    start, step = ladders[0].start, ladders[0].step
+    if ladders[0].count is not None and count > ladders[0].count:
+        return None
     factors = list(kernel.product.factors)
     place = next(
         i for i, (a, A, e) in enumerate(factors) if e > 0 and 1 / A == step and (a + A * start).expand().is_Integer

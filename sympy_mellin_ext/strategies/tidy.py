@@ -1,7 +1,8 @@
 """Shorter ways to write what the inverse transform returns: exact rewritings only, no search."""
 from __future__ import annotations
 
-from sympy import Add, Expr, Integer, Mul, Piecewise, Pow, Rational, S, gamma, igcd
+from sympy import Add, Expr, Gt, Integer, Lt, Mul, Piecewise, Pow, Rational, S, gamma, igcd
+from sympy.logic.boolalg import Boolean
 
 from ..gamma.shortest import shortest_quotient
 
@@ -17,15 +18,20 @@ def tidy(expr: Expr) -> Expr:
     >>> tidy(1/(a*sqrt(1 + b**2/a**2)))
     1/sqrt(a**2 + b**2)
     """
-    if not expr.args:
+    if not expr.args or not expr.has(Pow, gamma):
         return expr
     if isinstance(expr, Piecewise):
-        return expr.func(*((tidy(e), c) for e, c in expr.args))
+        return expr.func(*((tidy(e), _side_of_one(c)) for e, c in expr.args))
     if expr.is_Add:
         return common_factor(Add(*(tidy(a) for a in expr.args)))
-    if expr.is_Mul:
-        return _product(expr)
-    args = [tidy(a) if isinstance(a, Expr) else a for a in expr.args]
+    return _product(expr)
+
+
+def _inside(expr: Expr) -> Expr:
+    """The argument of a function or the base of a power: quotients of sums only."""
+    if expr.is_Atom or not expr.has(Pow):
+        return expr
+    args = [_inside(a) if isinstance(a, Expr) else a for a in expr.args]
     return _power(*args) if expr.is_Pow else expr.func(*args)
 
 
@@ -38,10 +44,13 @@ def _product(expr: Expr) -> Expr:
     branches = [a for a in args if isinstance(a, Piecewise)]
     if len(branches) == 1:
         front = Mul(*(a for a in args if a is not branches[0]))
-        return Piecewise(*((tidy(front * e), c) for e, c in branches[0].args))
+        return Piecewise(*((tidy(front * e), _side_of_one(c)) for e, c in branches[0].args))
     flat: list[Expr] = []
     for a in args:
-        flat.extend(Mul.make_args(tidy(a)))
+        if a.is_Pow:
+            flat.extend(Mul.make_args(_power(_inside(a.base), a.exp)))
+        else:
+            flat.append(a if isinstance(a, gamma) or a.is_Atom else _inside(a))
     return _joined(flat)
 
 
@@ -60,6 +69,11 @@ def _joined(factors: list[Expr]) -> Expr:
             (up if exponent > 0 else down).extend([base.args[0]] * abs(int(exponent)))
         else:
             powers.setdefault(base, []).append(exponent)
+    for base, exponents in list(powers.items()):
+        # gamma(b + 1)/b
+        if exponents == [S.NegativeOne] and base + 1 in up:
+            up[up.index(base + 1)] = base
+            del powers[base]
     if len(up) + len(down) > 1:
         for f in Mul.make_args(shortest_quotient(up, down)):
             if f.is_Rational:
@@ -113,6 +127,22 @@ def _power(base: Expr, exponent: Expr) -> Expr:
     return Mul(*parts, Pow(Mul(*rest), exponent))
 
 
+def _side_of_one(condition: Boolean) -> Boolean:
+    """``a**2/b**2 < 1`` as ``a < b`` for positive a and b."""
+    if not isinstance(condition, (Lt, Gt)) or condition.rhs is not S.One or not condition.lhs.is_positive:
+        return condition
+    powers = [factor.as_base_exp() for factor in Mul.make_args(condition.lhs)]
+    if not all(e.is_Rational and b.is_positive for b, e in powers):
+        return condition
+    unit = abs(powers[0][1])
+    for base, e in powers:
+        if not base.is_Rational:
+            unit = abs(e)
+    above = Mul(*(Pow(b, e / unit) for b, e in powers if e > 0))
+    below = Mul(*(Pow(b, -e / unit) for b, e in powers if e < 0))
+    return condition.func(above, below)
+
+
 def over_common_denominator(total: Expr) -> Expr:
     """A sum as its numerator times powers of positive atoms, where the terms have such denominators."""
     lowest: dict[Expr, Expr] = {}
@@ -136,7 +166,7 @@ def common_factor(total: Expr) -> Expr:
     if not total.is_Add:
         return total
     numbers = []
-    shared: dict[Expr, Expr] | None = None
+    terms: list[dict[Expr, Expr]] = []
     for term in total.args:
         c, rest = term.as_coeff_Mul()
         if not c.is_Rational:
@@ -146,35 +176,34 @@ def common_factor(total: Expr) -> Expr:
         for factor in Mul.make_args(rest):
             base, exponent = (factor.base, factor.exp) if factor.is_Pow else (factor, S.One)
             found[base] = found.get(base, S.Zero) + exponent
-        if shared is None:
-            shared = found
-            continue
-        lower: dict[Expr, Expr] = {}
-        for base, exponent in shared.items():
-            if base in found:
-                gap = exponent - found[base]
-                if gap.is_Rational:
-                    lower[base] = exponent if gap <= 0 else found[base]
-        shared = lower
-    assert shared is not None
-    shared = {b: e for b, e in shared.items() if e is not S.Zero}
-    content = Rational(igcd(*(n.p for n in numbers)), _lcm([int(n.q) for n in numbers]))
+        terms.append(found)
+    shared: dict[Expr, Expr] = {}
+    for base, exponent in terms[0].items():
+        lowest = exponent
+        for other in terms[1:]:
+            gap = lowest - other.get(base, S.Zero)
+            if not gap.is_Number and gap.is_Add:
+                gap = gap.expand()
+            if base not in other or not gap.is_Rational:
+                break
+            lowest = other[base] if gap > 0 else lowest
+        else:
+            shared[base] = lowest
+    content = Rational(igcd(*(n.p for n in numbers)), igcd(*(n.q for n in numbers)))
     if all(n.is_negative for n in numbers):
         content = -content
     if not shared and content is S.One:
         return total
+    inner = []
+    for number, found in zip(numbers, terms, strict=True):
+        for base, lowest in shared.items():
+            found[base] = (found[base] - lowest).expand()
+        inner.append(Mul(number / content, *(Pow(b, e) for b, e in found.items())))
     front = Mul(*(Pow(b, e) for b, e in shared.items()))
-    inner = Add(*(t / front / content for t in total.args))
-    if not inner.is_Add:
-        return content * front * inner
-    return Mul(content, front, inner) if front is not S.One else Mul(content, inner, evaluate=False)
-
-
-def _lcm(numbers: list[int]) -> int:
-    result = 1
-    for n in numbers:
-        result = result * n // int(igcd(result, n))
-    return result
+    rest = Add(*inner)
+    if front is S.One and rest.is_Add:
+        return Mul(content, rest, evaluate=False) if content is not S.One else rest
+    return Mul(content, front, rest)
 
 
 __all__ = ["common_factor", "over_common_denominator", "tidy"]
