@@ -33,6 +33,7 @@ from sympy import (
 )
 
 from sympy_mellin_ext.series import hypergeometric_pieces, taylor_transform
+from sympy_mellin_ext.series.jets import shape_of
 from sympy_mellin_ext.series.matching import constant_form
 from sympy_mellin_ext.series.recurrence import two_term
 from sympy_mellin_ext.series.tower import Tower, constants_of
@@ -195,7 +196,8 @@ def test_recurrence_of_higher_order_than_the_equation() -> None:
     """exp(-x)*sin(x) satisfies a second-order equation; its two-term one has order 4 and step 4."""
     f = exp(-x) * sin(x)
     tower = Tower(x, constants_of(f, x))
-    recurrence = two_term(tower, tower.element(f), Symbol("theta"))
+    assert shape_of(f, x, []) == (4, 4)
+    recurrence = two_term(tower, tower.element(f), Symbol("theta"), 4, 4)
     assert (recurrence.step, recurrence.left, recurrence.ratio) == (4, (0, 1, 2, 3), Rational(1, 4))
 
 

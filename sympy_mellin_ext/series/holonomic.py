@@ -37,6 +37,7 @@ from ..gamma import Factor, GammaProduct
 from .analytic import is_analytic
 from .frobenius import NoSeries, coefficient, pieces
 from .growth import Sign, assumed_sign
+from .jets import shape_of
 from .matching import Leading, ladder_heads, matching_product
 from .recurrence import Recurrence, two_term
 from .tower import Tower, Unknown, constants_of, order_power, split_power
@@ -178,8 +179,11 @@ def _equation(f: Expr, t: Symbol) -> tuple[Tower, Recurrence, Leading] | None:
     if constants is None:
         return None
     try:
+        shape = shape_of(f, t, constants)
+        if shape is None:
+            return None
         tower = Tower(t, constants)
-        recurrence = two_term(tower, tower.element(f), Symbol("theta"))
+        recurrence = two_term(tower, tower.element(f), Symbol("theta"), *shape)
     except Unknown:
         return None
     if recurrence is None:

@@ -21,7 +21,7 @@ from ..gamma.product import cancel
 from .growth import Sign, growth_ok
 from .recurrence import Recurrence
 
-_DIGITS = 40
+_DIGITS = 30
 # Values for parameters where a candidate is tried; nothing special happens at them.
 _SAMPLES = (
     ("0.8414709848", "1.3774920541", "0.6180339887", "1.1283791671", "0.9159655942"),
@@ -222,7 +222,7 @@ def _constant(product: GammaProduct, c: Expr, head: Expr) -> Expr | None:
 
 
 def _same(product: GammaProduct, root: Expr, c: Expr, samples: list[dict[Symbol, Expr]]) -> bool:
-    """Whether they are equal: exactly where they reduce, else to 30 digits at two parameter values."""
+    """Whether they are equal: exactly where they reduce, else to 20 digits at two parameter values."""
     series = product.laurent(-root, 1)
     if series.valuation > -1:
         return c is S.Zero
@@ -234,7 +234,7 @@ def _same(product: GammaProduct, root: Expr, c: Expr, samples: list[dict[Symbol,
     with mpmath.workdps(_DIGITS):
         return all(
             abs(_number(value, sample) - _number(c, sample))
-            <= mpmath.mpf(10) ** -30 * (1 + abs(_number(c, sample)))
+            <= mpmath.mpf(10) ** -20 * (1 + abs(_number(c, sample)))
             for sample in samples
         )
 

@@ -17,15 +17,10 @@ from sympy import Expr, Poly, S, Symbol, sqrt
 from sympy.polys.matrices import DomainMatrix
 from sympy.polys.rings import PolyElement
 
+from .jets import PRIME, independent_rows, modulo
 from .tower import Element, Tower
 
-_HIGHEST_ORDER = 4
-_LONGEST_STEP = 6
-_MOST_MONOMIALS = 12
 _HIGHEST_DEGREE = 24
-# A prime below 2**31; the search runs modulo it at random parameters before anything exact is solved.
-_PRIME = 2147483629
-_PARAMETERS = (104729, 1299709, 15485863, 32452843)
 
 
 @dataclass(frozen=True)
@@ -42,23 +37,18 @@ class Recurrence:
     equation: Expr
 
 
-def two_term(tower: Tower, f: Element, theta: Symbol) -> Recurrence | None:
-    """The two-term equation of lowest order up to 4 and step up to 6, or None."""
+def two_term(tower: Tower, f: Element, theta: Symbol, order: int, step: int) -> Recurrence | None:
+    """The two-term equation of this order and step (see `shape_of`), proved exactly, or None."""
     derivatives = [f]
-    for _ in range(_HIGHEST_ORDER):
+    for _ in range(order):
         derivative = tower.derive(derivatives[-1])
         derivatives.append({m: tower.X * c for m, c in derivative.items()})
-        if len({m for v in derivatives for m in v}) > _MOST_MONOMIALS:
-            return None
-        rows = _rows(derivatives)
-        if rows is None:
-            return None
-        numeric = [[_modular(c, tower) for c in row] for row in rows]
-        for step in range(1, _LONGEST_STEP + 1):
-            pivots = _dependent(_matrix(rows, numeric, step))
-            if pivots is not None:
-                return _solved(tower, rows, step, pivots, theta)
-    return None
+    rows = _rows(derivatives)
+    if rows is None:
+        return None
+    numeric = [[_modular(c) for c in row] for row in rows]
+    pivots = independent_rows(_matrix(rows, numeric, step))
+    return None if pivots is None else _solved(tower, rows, step, pivots, theta)
 
 
 def _rows(derivatives: Sequence[Element]) -> list[list[dict[int, PolyElement]]] | None:
@@ -85,17 +75,11 @@ def _rows(derivatives: Sequence[Element]) -> list[list[dict[int, PolyElement]]] 
     return rows
 
 
-def _modular(split: dict[int, PolyElement], tower: Tower) -> dict[int, int]:
-    result = {}
-    for power, polynomial in split.items():
-        total = 0
-        for exponents, c in polynomial.terms():
-            value = int(c.numerator) * pow(int(c.denominator), -1, _PRIME)
-            for base, e in zip(_PARAMETERS, exponents[1:], strict=False):
-                value = value * pow(base, e, _PRIME) % _PRIME
-            total += value
-        result[power] = total % _PRIME
-    return result
+def _modular(split: dict[int, PolyElement]) -> dict[int, int]:
+    return {
+        power: sum(modulo(int(c.numerator), int(c.denominator), e[1:]) for e, c in polynomial.terms()) % PRIME
+        for power, polynomial in split.items()
+    }
 
 
 def _positions(rows: list, step: int) -> list[tuple[int, int]]:
@@ -113,28 +97,6 @@ def _matrix(rows: list, numeric: list, step: int) -> list[list[int]]:
         row = numeric[i]
         matrix.append([s.get(power, 0) for s in row] + [s.get(power - step, 0) for s in row])
     return matrix
-
-
-def _dependent(matrix: list[list[int]]) -> list[int] | None:
-    """Row numbers of a maximal independent set if the null space is one line, else None."""
-    size = len(matrix[0])
-    echelon: dict[int, list[int]] = {}
-    chosen = []
-    for number, source in enumerate(matrix):
-        row = source[:]
-        for column in sorted(echelon):
-            if row[column]:
-                factor, pivot = row[column], echelon[column]
-                row = [(a - factor * b) % _PRIME for a, b in zip(row, pivot, strict=True)]
-        lead = next((j for j, a in enumerate(row) if a), None)
-        if lead is None:
-            continue
-        scale = pow(row[lead], -1, _PRIME)
-        echelon[lead] = [a * scale % _PRIME for a in row]
-        chosen.append(number)
-        if len(chosen) == size:
-            return None
-    return chosen if len(chosen) == size - 1 else None
 
 
 def _solved(tower: Tower, rows: list, step: int, pivots: list[int], theta: Symbol) -> Recurrence | None:

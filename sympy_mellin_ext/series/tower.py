@@ -10,6 +10,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass
+from typing import Any
 
 from sympy import (
     QQ,
@@ -119,13 +120,15 @@ class Tower:
     x : Symbol
     constants : list of Expr
         Atoms that are treated as independent parameters.
+    field : optional
+        What stands in for the rational functions of ``x`` and the parameters.
     """
 
-    def __init__(self, x: Symbol, constants: list[Expr]) -> None:
+    def __init__(self, x: Symbol, constants: list[Expr], field: Any = None) -> None:
         self.x = x
         self.constants = constants
         self.symbols = [Symbol(f"c{i}") for i in range(len(constants))]
-        self.K = FracField([x, *self.symbols], QQ)
+        self.K = FracField([x, *self.symbols], QQ) if field is None else field
         self.X = self.K.gens[0]
         self._constant = dict(zip(constants, self.K.gens[1:], strict=True))
         self.generators: list[Generator] = []
