@@ -26,23 +26,28 @@ _SOURCE = "DLMF 5.12.1"
 _MOST_LOGS = 6
 
 
+def is_finite(draft: Draft, ratio: Expr) -> bool:
+    """Whether a draft is a sum of exponentials of y times a whole power of y."""
+    if draft.logs or draft.kernels or any(r != ratio for r, _ in draft.exponents) or not draft.exponents:
+        return False
+    k = ((draft.power + 1) / ratio - 1).expand()
+    return bool(k.is_Integer and 0 <= k <= _MOST_LOGS)
+
+
 def closed_form_of_beta(
     problem: Problem, expansions: Sequence[Expansion], plain: Sequence[Draft], name: str
 ) -> ClosedForm | None:
-    """The closed form if every term is a power of one binomial times an exponential and a whole power of y."""
-    if any(e.rays or e.logs for e in expansions):
-        raise Unsupported("powers of a binomial besides a series")
+    """The closed form of powers of one binomial times exponentials and whole powers of y, and of `plain` ones."""
     condition: Boolean = S.true
     items: list[tuple[BetaFactor, int, Expr]] = []
     ratio = expansions[0].ratio
     rest = list(plain)
     for e in expansions:
-        if e.ratio != ratio:
+        if e.ratio != ratio or e.logs:
             raise Unsupported("several powers of x in exponents")
         condition = And(condition, e.condition)
         k = _whole_power(e.power, ratio)
         items.extend((b, k, ratio) for b in e.beta)
-        rest.extend(d.times(Draft(power=e.power, logs=e.logs)) for d in e.plain)
     if len({(b.z, b.d) for b, _, _ in items}) != 1:
         raise Unsupported("different binomials")
     first = items[0][0]
@@ -76,8 +81,6 @@ def _in_q(b: BetaFactor, k: int) -> BetaTerm:
 
 
 def _finite(draft: Draft, d: Expr, ratio: Expr) -> BetaTerm:
-    if draft.logs or draft.kernels or any(r != ratio for r, _ in draft.exponents):
-        raise Unsupported("other terms besides powers of a binomial")
     k = _whole_power(draft.power, ratio)
     rate = Add(*(-c for _, c in draft.exponents))
     return BetaTerm(draft.coefficient * S.NegativeOne**k / d ** (k + 1), (rate / d).expand(), S.One, k)

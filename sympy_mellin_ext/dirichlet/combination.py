@@ -73,7 +73,7 @@ class _Level:
         unit = periodic([(r.z, r.step, r.a, r.coefficient) for r in rational]) if rational else Periodic()
         if unit is None:
             unit, rational = Periodic(), []
-        rest = _merged(r for r in rows if r not in rational)
+        rest = _halved(_merged(r for r in rows if r not in rational))
         return cls(
             unit,
             [r for r in rest if r.z is S.One],
@@ -114,10 +114,14 @@ class _Level:
         if w.is_Integer and w.is_positive:
             return self._at_integer(int(w))
         terms = [(step, c, functions.value(S.One, w, a)) for step, a, c in self._at_steps[len(self.unit.zeta) :]]
-        terms += [(d, c, dirichlet_eta(w)) for d, c in self.unit.eta.items()]
         terms += [(r.step, r.coefficient, functions.value(r.z, w, r.a)) for r in self.alternating + self.lerch]
         total = _common_step(terms, w)
-        return Add(_weighted(self.unit.zeta, w, zeta(w)), total) if self.unit.zeta else total
+        unit = [
+            _weighted(weights, w, function)
+            for weights, function in ((self.unit.zeta, zeta(w)), (self.unit.eta, dirichlet_eta(w)))
+            if weights
+        ]
+        return Add(*unit, total)
 
     def _at_integer(self, w: int) -> Expr:
         """At a whole w > 1: reflection where it applies."""
@@ -260,6 +264,27 @@ def _merged(rows: Iterable[Row]) -> list[Row]:
     merged = [Row(*key, Add(*column)) for key, column in columns.items()]
     merged = [r._replace(coefficient=r.coefficient.expand()) if r.coefficient.is_Add else r for r in merged]
     return [r for r in merged if r.coefficient is not S.Zero]
+
+
+def _halved(rows: list[Row]) -> list[Row]:
+    """``Phi(1, w, a) + Phi(-1, w, a)`` is twice its even half, a Hurwitz zeta function at a/2; likewise the odd half."""
+    by_place = {(r.z, r.step, r.a): r for r in rows if r.z in (S.One, S.NegativeOne)}
+    result: list[Row] = []
+    used: set[Row] = set()
+    for r in rows:
+        if r in used:
+            continue
+        other = by_place.get((-r.z, r.step, r.a))
+        sign = None if other is None else S.One if other.coefficient == r.coefficient else S.NegativeOne
+        if other is None or other.coefficient not in (r.coefficient, -r.coefficient):
+            result.append(r)
+            continue
+        used.add(other)
+        plain = r if r.z is S.One else other
+        start = r.a / 2 if sign is S.One else (r.a + 1) / 2
+        # the row keeps (2*step)**(-w): its coefficient is for w = u - shift already
+        result.append(Row(S.One, r.shift, 2 * r.step, start.expand(), 2 * plain.coefficient))
+    return result
 
 
 # -- reflection ----------------------------------------------------------------------------------------------

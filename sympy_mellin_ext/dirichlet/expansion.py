@@ -51,6 +51,16 @@ class BetaFactor:
     other: Expr = S.Zero
 
 
+@dataclass(frozen=True)
+class LogFactor:
+    """``coefficient * exp(-rate*y) * log(1 - z*exp(-d*y))`` with a rate that is not zero."""
+
+    coefficient: Expr
+    rate: Expr
+    z: Expr
+    d: Expr
+
+
 @dataclass
 class Expansion:
     """What one draft amounts to, as multiples of ``x**power * log(x)**logs``, ``y = x**ratio``."""
@@ -61,6 +71,7 @@ class Expansion:
     rays: list[Ray] = field(default_factory=list)
     plain: list[Draft] = field(default_factory=list)
     beta: list[BetaFactor] = field(default_factory=list)
+    logarithms: list[LogFactor] = field(default_factory=list)
     condition: Boolean = S.true
 
 
@@ -352,11 +363,15 @@ def _logarithm(
     if rate is S.Zero and not trig.trig:
         for z, d, n in found:
             result.rays.append(Ray(d, z, S.NegativeOne, S.One, -coefficient * n * z))
-    elif not trig.trig and all(z is S.One for z, _, _ in found):
+        return
+    whole = not trig.trig and all(z is S.One for z, _, _ in found)
+    for waves in as_exponentials(trig):
+        turned = (rate + Add(*(-e for _, e in waves.exponents))).expand()
         for z, d, n in found:
-            result.beta.append(BetaFactor(coefficient * n, rate, z, d, S.Zero, 1))
-    else:
-        raise Unsupported("a logarithm with another factor")
+            if whole:
+                result.beta.append(BetaFactor(coefficient * n, rate, z, d, S.Zero, 1))
+            else:
+                result.logarithms.append(LogFactor(coefficient * n * waves.coefficient, turned, z, d))
 
 
 def _beta_logarithms(
@@ -422,4 +437,4 @@ def _joined(factors: dict[tuple[Expr, Expr], Expr]) -> dict[tuple[Expr, Expr], E
     return factors
 
 
-__all__ = ["BetaFactor", "Expansion", "Ray", "Unsupported", "expand"]
+__all__ = ["BetaFactor", "Expansion", "LogFactor", "Ray", "Unsupported", "expand"]

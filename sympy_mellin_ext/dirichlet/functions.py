@@ -92,7 +92,8 @@ def hurwitz_series(w: Expr, rate: Expr, a: Expr, terms: int) -> Series:
 
 def _stieltjes(n: int, a: Expr) -> Expr:
     if n == 0:
-        return -digamma(a)
+        # Gauss' theorem, DLMF 5.4.19, for small denominators
+        return -digamma(a).expand(func=True) if a.is_Rational and a.q <= 12 else -digamma(a)
     return stieltjes(n) if a is S.One else stieltjes(n, a)
 
 

@@ -22,8 +22,6 @@ def gather(expansions: Sequence[Expansion]) -> tuple[list[Piece], list[Draft]]:
     groups: dict[tuple[Expr, int, Expr], list[Ray]] = {}
     conditions: dict[tuple[Expr, int, Expr], Boolean] = {}
     for e in expansions:
-        front = Draft(power=e.power, logs=e.logs)
-        plain.extend(d.times(front) for d in e.plain)
         if e.rays:
             key = (e.power, e.logs, e.ratio)
             groups.setdefault(key, []).extend(e.rays)
