@@ -49,9 +49,11 @@ def integrate(f: Any, *limits: Any, given: Given = (), **hints: Any) -> Any:
         outcome = try_strategies(f, limits, given, hints)
         if outcome.closed is not None:
             return outcome.answer
+        if outcome.divergent:
+            return outcome.unbounded()
         if outcome.question is not None:
             with refused(*outcome.question):
-                return outcome.judged(sympy.integrate(f, *limits, **hints))
+                return sympy.integrate(f, *limits, **hints)
     return sympy.integrate(f, *limits, **hints)
 
 
@@ -66,25 +68,21 @@ class Outcome(NamedTuple):
     question : tuple (f, limits), or None
         The integral as it was understood; None if it was not one of ours to begin with.
     divergent : bool
-        Whether the integral was shown to diverge.
+        Whether the integral was shown to diverge; SymPy, which may step over a pole, is not asked then.
+    infinity : oo or -oo, where it diverges to that.
     """
 
     closed: ClosedForm | None = None
     answer: Any = None
     question: tuple[Expr, tuple[Tuple, ...]] | None = None
     divergent: bool = False
+    infinity: Expr | None = None
 
-    def judged(self, stock: Any) -> Any:
-        """What SymPy says of the integral, unless it is a finite value of one that we know to diverge."""
-        if not self.divergent or self.question is None:
-            return stock
-        value = stock[0] if isinstance(stock, tuple) else stock
-        if isinstance(value, Integral) or (
-            isinstance(value, Expr)
-            and value.has(S.Infinity, S.NegativeInfinity, S.ComplexInfinity, S.NaN)
-            and not value.has(Integral)
-        ):
-            return stock
+    def unbounded(self) -> Expr:
+        """What stands for an integral that we know to diverge: oo or -oo, else the integral itself."""
+        if self.infinity is not None:
+            return self.infinity
+        assert self.question is not None
         f, limits = self.question
         return Integral(f, *limits)
 
@@ -108,7 +106,7 @@ def try_strategies(
     except RecursionError:  # SymPy may have a shallower way
         answer = None
     if answer is None:
-        return Outcome(question=question, divergent=diagnosis.divergent)
+        return Outcome(question=question, divergent=diagnosis.divergent, infinity=diagnosis.infinity)
     if conds == "piecewise":
         return Outcome(answer, answer.as_piecewise(nested), question)
     bare = answer.value if conds == "none" else (answer.value, answer.condition)

@@ -36,6 +36,7 @@ class Diagnosis:
     def __init__(self) -> None:
         self.findings: list[Refusal] = []
         self.divergent = False  # shown for the question as it was asked
+        self.infinity: Expr | None = None  # oo or -oo, where it diverges to that
         self.proved: list[int] = []  # depths of the questions that were shown to diverge
 
     def refusal(self) -> Refusal:
@@ -85,12 +86,13 @@ class Problem:
         if self.diagnosis is not None:
             self.diagnosis.findings.append(Refusal(reason, detail))
 
-    def diverges(self, detail: str) -> None:
-        """Note that the integral is shown to diverge, for every value of the parameters."""
+    def diverges(self, detail: str, infinity: Expr | None = None) -> None:
+        """Note that the integral is shown to diverge, for every value of the parameters (to oo or -oo)."""
         if self.diagnosis is not None:
             self.diagnosis.proved.append(self.depth)
             if self.depth == 0:
                 self.diagnosis.divergent = True
+                self.diagnosis.infinity = infinity
         return self.refuse("diverges", detail)
 
     def changed(self, integrand: Expr, lower: Expr = S.Zero, upper: Expr = oo) -> Problem:

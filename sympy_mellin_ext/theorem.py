@@ -13,7 +13,7 @@ from .pieces import Piece
 from .problem import Refusal
 from .region import Facts, real_part
 from .series import Growth, SeriesTransform, phi_transform
-from .strategies.finite_part import converge
+from .strategies.finite_part import Divergence, converge
 from .strategies.master_theorem import strip_of
 
 _SOURCE = "Hardy, Ramanujan: Twelve Lectures (1940), ch. XI"
@@ -91,7 +91,7 @@ def _closed(transform: SeriesTransform, phi: Expr, n: Symbol, s: Symbol, facts: 
     if positive and transform.growth.ok and not transform.extras:
         piece = Piece(S.One, s - 1, product=product, inside=not product.lam.is_nonpositive)
     outcome = converge([piece], facts)
-    if isinstance(outcome, str):
+    if isinstance(outcome, Divergence):
         return None
     region, at_zero, at_infinity = outcome
     for need in transform.growth.needs:

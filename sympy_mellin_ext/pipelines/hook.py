@@ -91,8 +91,10 @@ def _dispatcher(original: Callable[..., Any]) -> Callable[..., Any]:
             return outcome.answer
         if outcome.question is None:
             return original(self, **hints)
+        if outcome.divergent:
+            return outcome.unbounded()
         with refused(self.function, self.limits):
-            return outcome.judged(original(self, **hints))
+            return original(self, **hints)
 
     return doit
 

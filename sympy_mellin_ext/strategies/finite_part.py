@@ -10,6 +10,7 @@ from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass, field
+from typing import NamedTuple
 
 from sympy import Add, Expr, S, bernoulli, factorial, log
 
@@ -104,16 +105,26 @@ def _vanishes(total: Expr) -> bool:
     return expanded.together().as_numer_denom()[0].expand() is S.Zero
 
 
-def converge(pieces: Sequence[Piece], facts: Facts, principal: bool = False) -> tuple[Region, Edge, Edge] | str:
+class Divergence(NamedTuple):
+    """Why a sum has no integral: ``reason`` as in a refusal, and oo or -oo where it diverges to that."""
+
+    reason: str
+    proved: bool = False
+    infinity: Expr | None = None
+
+
+def converge(
+    pieces: Sequence[Piece], facts: Facts, principal: bool = False
+) -> tuple[Region, Edge, Edge] | Divergence:
     """The region where the integral over (0, oo) of the sum converges, or the reason why there is none."""
     if any(piece.pole_order_inside for piece in pieces) and not poles_cancel(pieces, principal):
-        return "diverges"
+        return Divergence("diverges", True)
     region = Region(facts)
     conditional: dict[int, list[Expr]] = {1: [], -1: []}
     for piece in pieces:
         growth = piece.growth()
         if growth is None:
-            return "growth"
+            return Divergence("growth")
         if growth.condition is not S.true:
             region = region.holds(growth.condition)
         if growth.positive is not None:
@@ -125,14 +136,40 @@ def converge(pieces: Sequence[Piece], facts: Facts, principal: bool = False) -> 
     for end in (1, -1):
         found = edge(pieces, end, facts)
         if found is None:
-            return "diverges"
+            return Divergence("diverges")
         found.survivors += conditional[end]
         for exponent in found.survivors:
             region = region.positive(end * (real_part(exponent) + 1))
         edges.append(found)
     if region.empty:
-        return "diverges"
+        return Divergence("diverges", True, _infinity(pieces, edges, conditional))
     return region, edges[0], edges[1]
+
+
+def _infinity(pieces: Sequence[Piece], edges: list[Edge], conditional: dict[int, list[Expr]]) -> Expr | None:
+    """The signed infinity that the total goes to, where the leading terms at the divergent ends agree on it."""
+    signs = set()
+    for end, found in zip((1, -1), edges, strict=True):
+        exponents = found.survivors
+        if not all(e.is_number and e.is_real for e in exponents):
+            return None
+        spoiling = [e for e in exponents if end * (e + 1) <= 0]
+        if not spoiling:
+            continue
+        if conditional[end]:
+            return None
+        leading = min(spoiling) if end > 0 else max(spoiling)
+        columns: dict[int, list[Expr]] = {}
+        for piece in pieces:
+            for j, c in enumerate(piece.coefficients(leading, end)):
+                columns.setdefault(j, []).append(c)
+        totals = {j: Add(*column) for j, column in columns.items()}
+        top = max((j for j, total in totals.items() if not _vanishes(total)), default=None)
+        if top is None:
+            return None
+        sign = totals[top] * (end * -1) ** top  # log(x) is negative near 0
+        signs.add(1 if sign.is_positive else -1 if sign.is_negative else 0)
+    return {1: S.Infinity, -1: S.NegativeInfinity}.get(signs.pop()) if len(signs) == 1 else None
 
 
 def poles_cancel(pieces: Sequence[Piece], principal: bool) -> bool:

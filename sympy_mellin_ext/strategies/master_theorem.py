@@ -21,7 +21,7 @@ from ..matching import Term, read_terms
 from ..pieces import Piece
 from ..problem import Problem
 from ..region import Region, real_part
-from .finite_part import Edge, converge, total_value
+from .finite_part import Divergence, Edge, converge, total_value
 from .registry import attempt
 
 _SUM_SOURCE = "D. Zagier, The Mellin transform and related analytic techniques (2006), section 1"
@@ -94,10 +94,10 @@ def closed_form_of_pieces(
 ) -> ClosedForm | None:
     """The closed form of a sum of pieces, with region, strip and values at removable singularities."""
     outcome = converge(pieces, problem.facts, problem.principal)
-    if outcome == "diverges":
-        return problem.diverges("its behaviour at 0, at oo or at a pole between")
-    if isinstance(outcome, str):
-        return problem.refuse(outcome, "a kernel grows too fast for a Mellin transform")
+    if isinstance(outcome, Divergence):
+        if outcome.proved:
+            return problem.diverges("its behaviour at 0, at oo or at a pole between", outcome.infinity)
+        return problem.refuse(outcome.reason, "a kernel grows too fast, or cancels too much, for a Mellin transform")
     region, at_zero, at_infinity = outcome
     value = total_value(pieces)
     if value.has(S.NaN, S.ComplexInfinity, S.Infinity, S.NegativeInfinity):
