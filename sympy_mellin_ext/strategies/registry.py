@@ -38,11 +38,12 @@ def _load() -> tuple[Strategy, ...]:
     global _strategies
     with _lock:
         if _strategies is None:
-            from . import exponential_series, master_theorem, mellin_barnes, ranges, taylor
+            from . import abel_plana, exponential_series, master_theorem, mellin_barnes, ranges, taylor
 
             found: list[Strategy] = [
                 *master_theorem.STRATEGIES,
                 *exponential_series.STRATEGIES,
+                *abel_plana.STRATEGIES,
                 *mellin_barnes.STRATEGIES,
                 *taylor.STRATEGIES,
                 *ranges.STRATEGIES,
