@@ -201,8 +201,8 @@ def common_factor(total: Expr) -> Expr:
         inner.append(Mul(number / content, *(Pow(b, e) for b, e in found.items())))
     front = Mul(*(Pow(b, e) for b, e in shared.items()))
     rest = Add(*inner)
-    if front is S.One and rest.is_Add:
-        return Mul(content, rest, evaluate=False) if content is not S.One else rest
+    if front is S.One and rest.is_Add and content is not S.One:
+        return total  # SymPy multiplies a number into a sum: the result would not survive pickling
     return Mul(content, front, rest)
 
 
