@@ -37,8 +37,7 @@ class _Walker:
     def theta(self) -> tuple[Any, Any]:
         f, g = self.row
         y = self.y
-        gen = y.numer.ring.gens[0]
-        return y * f.diff(gen) + g * self.m0, y * g.diff(gen) + f + g * self.m1
+        return y * f.diff(y) + g * self.m0, y * g.diff(y) + f + g * self.m1
 
     def combine(self, alpha: Any, beta: Any) -> None:
         """Replace the current F by ``alpha*F + beta*theta F``."""

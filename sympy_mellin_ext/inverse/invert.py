@@ -22,6 +22,7 @@ from .pfq import named_pfq, put
 from .residues import Tail, left_series, residue_at
 from .rows import _two_by_two_hyper, look_up, look_up_fixed
 from .signature import Signature, Zero, as_int, cancel, compress, is_nonpositive_int, normalise, power
+from .tidy import tidy
 
 BAD = (S.NaN, S.ComplexInfinity, S.Infinity, S.NegativeInfinity)
 
@@ -70,14 +71,20 @@ def inverse_mellin(factors: Iterable[tuple[Expr, Rational, int]], z: Expr, facts
         return None
     if argument == 1:
         value = _at_one(norm.signature, w)
-        return None if value is None else norm.constant * value
+        return None if value is None else tidy(norm.constant * value)
     value = _Search(w, facts, argument).run(norm.signature)
     if value is None:
         return None
-    result = norm.constant * put(value, w, norm.scale, z, norm.power)
-    if result.has(*BAD):
-        return None
-    return result
+    result = _finished(norm.constant * put(value, w, norm.scale, z, norm.power))
+    return None if result.has(*BAD) else result
+
+
+def _finished(expr: Any) -> Any:
+    """`tidy`, piece by piece."""
+    if not expr.has(Piecewise):
+        return tidy(expr)
+    factor, rest = expr.as_independent(Piecewise) if expr.is_Mul else (S.One, expr)
+    return Piecewise(*((tidy(factor * e), c) for e, c in rest.args))
 
 
 def _pinched(sig: Signature) -> bool:
@@ -150,7 +157,9 @@ class _Search:
         smaller, zeros = cancel(sig)
         if smaller == sig:
             return None
-        value = self.run(smaller) if any(map(len, smaller)) else None
+        # the operators act on a function, not on its value at 1
+        search = _Search(self.w, self.facts, self.w) if zeros else self
+        value = search.run(smaller) if any(map(len, smaller)) else None
         if value is None or (zeros and (not _named(value) or value.has(Piecewise))):
             return None
         return self.operated(value, zeros)
@@ -214,7 +223,7 @@ class _Search:
                     upper.remove(a)
                     lower.remove(a)
             f = hyper(upper, lower, argument)
-        return expand_mul(ratio(tail.coefficient) * power(self.w, tail.exponent) * f)
+        return expand_mul(tail.coefficient * power(self.w, tail.exponent) * f)
 
     def broken(self, sig: Signature) -> Any:
         """Lam = 0: two functions, one on each side of w = 1."""
@@ -289,34 +298,3 @@ class _Search:
             return None
         a, b, c, d = sig
         return meijerg(([1 - x for x in b], list(c)), (list(a), [1 - x for x in d]), self.w)
-
-
-def ratio(expr: Any) -> Any:
-    """A quotient of Gamma functions with integer differences cancelled, reflections left alone."""
-    top: list[Any] = []
-    bottom: list[Any] = []
-    rest: Any = S.One
-    for f in expr.args if expr.is_Mul else (expr,):
-        base, e = f.as_base_exp()
-        if isinstance(base, gamma) and e.is_Integer:
-            (top if e > 0 else bottom).extend([base.args[0]] * abs(int(e)))
-        else:
-            rest *= f
-    for t in list(top):
-        for b in bottom:
-            n = as_int(t - b)
-            if n is not None and abs(n) <= 4:
-                top.remove(t)
-                bottom.remove(b)
-                low = b if n > 0 else t
-                for k in range(abs(n)):
-                    rest *= (low + k) ** (1 if n > 0 else -1)
-                break
-    for t in top:
-        rest *= gamma(t)
-    for b in bottom:
-        rest /= gamma(b)
-    return rest
-
-
-__all__ = ["inverse_mellin"]

@@ -105,6 +105,8 @@ def put(expr: Any, y: Symbol, scale: Any, z: Any, k: Any) -> Any:
     for node in sorted(expr.atoms(type(y**2)), key=str):
         if node.base == y:
             moves[node] = power(scale, node.exp) * power(z, k * node.exp)
+    if expr.has(log(y)):
+        moves[log(y)] = log(scale) + k * log(z)
     moves[y] = scale * power(z, k)
     return expr.xreplace(moves)
 

@@ -146,7 +146,8 @@ def kummer(a: Expr, b: Expr, sign: int, y: Symbol) -> Expr | None:
             bases.append((a, 2 * a))
     for base in bases:
         moves = shifts((a, b), base)
-        if moves is None or sum(map(abs, moves)) > 8:
+        numeric = all(v.is_Rational for v in base)
+        if moves is None or sum(map(abs, moves)) > (8 if numeric else 3 if base[0] == 1 else 1):
             continue
         found = neighbour(((base[0],), base[1]), moves, sign, y, _kummer_direct(*base, sign, y))
         if found is not None:

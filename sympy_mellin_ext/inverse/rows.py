@@ -22,6 +22,7 @@ from sympy import (
     besselj,
     bessely,
     cos,
+    erfi,
     exp,
     expand_mul,
     expint,
@@ -190,6 +191,10 @@ def _fresnel_g(w: Any) -> Any:
     return 2 * pi * sqrt(2 * pi) * ((HALF - fresnelc(t)) * cos(x) + (HALF - fresnels(t)) * sin(x))
 
 
+def _goodwin_staton(w: Any) -> Any:
+    return pi * exp(-w) * (pi * erfi(sqrt(w)) - Ei(w))
+
+
 def _sine_stieltjes(w: Any) -> Any:
     x = 2 * sqrt(w)
     return (exp(-x) * Ei(x) + exp(x) * expint(1, x)) / sqrt(pi)
@@ -200,6 +205,7 @@ FIXED: tuple[Fixed, ...] = (
     Fixed(Signature((S.Zero, S.Zero, HALF), (S.One,), (), ()), _cosine_auxiliary, "DLMF 6.7.14, 6.2.18"),
     Fixed(Signature((S.Zero, HALF, 3 * QUARTER), (QUARTER,), (), ()), _fresnel_f, "DLMF 7.7.10, 7.2.10"),
     Fixed(Signature((S.Zero, HALF, QUARTER), (3 * QUARTER,), (), ()), _fresnel_g, "DLMF 7.7.11, 7.2.11"),
+    Fixed(Signature((S.Zero, S.Zero, HALF), (HALF, S.One), (), ()), _goodwin_staton, "DLMF 7.2.12, 7.5.13"),
     Fixed(Signature((HALF, HALF), (HALF,), (), (S.One,)), _sine_stieltjes, "DLMF 6.7.1-3"),
 )
 

@@ -28,7 +28,7 @@ from sympy import (
 )
 
 from .contiguous import _Walker
-from .signature import as_int, is_nonpositive_int, power
+from .signature import as_int, power
 
 HALF = S.Half
 
