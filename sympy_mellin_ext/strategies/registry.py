@@ -44,8 +44,8 @@ def _load() -> tuple[Strategy, ...]:
                 *master_theorem.STRATEGIES,
                 *exponential_series.STRATEGIES,
                 *abel_plana.STRATEGIES,
-                *mellin_barnes.STRATEGIES,
                 *taylor.STRATEGIES,
+                *mellin_barnes.STRATEGIES,
                 *ranges.STRATEGIES,
             ]
             for name, strategy in plug_ins(STRATEGY_GROUP):
