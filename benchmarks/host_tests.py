@@ -4,8 +4,8 @@
                                    [--report FILE] [--reuse REPORT]
 
 Every test function of the modules below runs twice, each time in a process of its own (cold caches) with a
-time limit: with stock SymPy, and with `enable()`.  With `--drop-in` the name `integrate` in the test module is
-replaced by ours as well.  Printed are the tests that pass with stock and fail with us.
+time limit: with stock SymPy, and with `enable()`.  With `--drop-in` the name `integrate` in the test module
+is replaced by ours as well.  Printed are the tests that pass with stock and fail with us.
 
 A test whose assertion fails by the form of an answer only stands in `FORM_ONLY`.  It runs once more with each
 ``assert left == right`` relaxed: the sides may differ if they agree at sampled values of their symbols.
@@ -41,13 +41,16 @@ MODULES = (
 FORM_ONLY: dict[str, str] = {}
 
 
+OUTCOMES = ("passed", "failed", "skipped", "timed out")
+
+
 @dataclass(frozen=True)
 class Run:
     """The outcome of one test function under one mode."""
 
     test: str
     mode: str
-    outcome: str  # passed, failed, skipped, timed out
+    outcome: str
     seconds: float
     detail: str = ""
 
@@ -88,8 +91,8 @@ def _call(function: Callable[[], Any]) -> tuple[str, str]:
         kind = type(error).__name__
         if kind in ("Skipped", "XFail"):
             return "skipped", kind
-        last = traceback.extract_tb(error.__traceback__)
-        where = next((f for f in reversed(last) if "/tests/" in f.filename or f.name.startswith("test")), last[-1])
+        frames = traceback.extract_tb(error.__traceback__)
+        where = next((f for f in reversed(frames) if "/tests/" in f.filename), frames[-1])
         return "failed", f"{kind}: {str(error)[:300]} at line {where.lineno}: {where.line}"
     return "passed", ""
 
@@ -136,10 +139,11 @@ def compare(runs: list[Run], mode: str) -> tuple[list[Run], list[Run]]:
 
 def main(arguments: list[str] | None = None) -> int:
     """The command line."""
-    parser = argparse.ArgumentParser(prog="python -m benchmarks.host_tests", description=__doc__.splitlines()[0])
+    summary = str(__doc__).splitlines()[0]
+    parser = argparse.ArgumentParser(prog="python -m benchmarks.host_tests", description=summary)
     parser.add_argument("--only", default="", metavar="NAME", help="part of module:function")
     parser.add_argument("--jobs", type=int, default=2, metavar="N", help="processes at a time (2)")
-    parser.add_argument("--seconds", type=float, default=120, metavar="S", help="time limit of one test (120)")
+    parser.add_argument("--seconds", type=float, default=120, metavar="S", help="limit of one test (120)")
     parser.add_argument("--drop-in", action="store_true", help="replace the name integrate in the tests, too")
     parser.add_argument("--report", metavar="FILE", help="write every run to this JSON file")
     parser.add_argument("--reuse", metavar="REPORT", help="take the stock runs from an earlier report")
@@ -165,7 +169,8 @@ def main(arguments: list[str] | None = None) -> int:
     for run in new:
         print(f"\nnewly failing: {run.test}\n  {run.detail}")
     bad = len(new) + len(late) + sum(r.outcome != "passed" for r in forms)
-    print(f"\n{len(names)} tests, {len(new)} newly failing, {len(late)} newly too slow, {len(forms)} by form only")
+    counts = f"{len(new)} newly failing, {len(late)} newly too slow, {len(forms)} by form only"
+    print(f"\n{len(names)} tests, {counts}")
     return 1 if bad else 0
 
 
@@ -180,9 +185,8 @@ def _print_summary(runs: list[Run], mode: str) -> None:
         for m in ("stock", mode):
             mine = [r for r in runs if r.mode == m and r.test.startswith(name + ":")]
             if mine:
-                counts = ", ".join(
-                    f"{sum(r.outcome == o for r in mine)} {o}" for o in ("passed", "failed", "skipped", "timed out")
-                )
+                outcomes = [r.outcome for r in mine]
+                counts = ", ".join(f"{outcomes.count(o)} {o}" for o in OUTCOMES)
                 print(f"{name:45} {m:8} {counts}, {sum(r.seconds for r in mine):.1f} s")
 
 

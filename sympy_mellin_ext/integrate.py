@@ -11,7 +11,7 @@ from sympy import Expr, Integral, Interval, S, Symbol, Tuple, sympify
 from .arguments import Given, expression, relations, symbol
 from .closed_form import ClosedForm
 from .fallback import refused
-from .problem import Diagnosis, Problem, Refusal
+from .problem import Diagnosis, Problem
 from .region import Facts
 from .strategies import attempt
 
@@ -226,7 +226,8 @@ def principal_value(f: Any, *limits: Any, given: Given = (), strict: bool = Fals
         if diagnosis is not None:
             raise diagnosis.refusal()
         return None
-    return replace(answer, integrand=f, limits=((x, lower, upper),), strategy=f"principal value, {answer.strategy}")
+    strategy = f"principal value, {answer.strategy}"
+    return replace(answer, integrand=f, limits=((x, lower, upper),), strategy=strategy)
 
 
 def mellin(f: Any, x: Symbol, s: Symbol, given: Given = (), strict: bool = False) -> ClosedForm | None:

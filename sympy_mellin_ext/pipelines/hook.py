@@ -99,7 +99,7 @@ def _dispatcher(original: Callable[..., Any]) -> Callable[..., Any]:
     return doit
 
 
-class extend_sympy(ContextDecorator):  # noqa: N801 - used like a function
+class extend_sympy(ContextDecorator):
     """Within the block, SymPy's own calls that end in a definite integral try our strategies first.
 
     That holds in the context of the block (`contextvars`: the thread, or the task of an event loop), and

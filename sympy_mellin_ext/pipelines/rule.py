@@ -62,12 +62,16 @@ def _rewrite(expr: Basic, excluded: frozenset[Basic]) -> Basic:
 
 def _branches(expr: Piecewise, excluded: frozenset[Basic]) -> Basic:
     branches = []
+    changed = False
     for value, condition in expr.args:
         if condition in excluded:  # a traversal bottom-up has put our answer into itself
+            changed = True
             continue
-        branches.append((_rewrite(value, excluded), condition))
+        new = _rewrite(value, excluded)
+        changed = changed or new is not value
+        branches.append((new, condition))
         excluded |= {condition}
-    if not branches or len(branches) == len(expr.args) and all(b[0] is old[0] for b, old in zip(branches, expr.args, strict=True)):
+    if not branches or not changed:
         return expr
     value, condition = branches[0]
     return value if condition == True else Piecewise(*branches)  # noqa: E712 - SymPy Boolean

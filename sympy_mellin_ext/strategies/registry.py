@@ -30,7 +30,7 @@ _lock = threading.RLock()
 
 
 def strategies() -> tuple[Strategy, ...]:
-    """The strategies in the order in which they are tried: built-in ones, those of plug-ins, those registered."""
+    """The strategies in the order in which they are tried: built-in, of plug-ins, registered."""
     return _strategies if _strategies is not None else _load()
 
 
@@ -98,8 +98,9 @@ def _with(
     found: list[Strategy], strategy: Strategy, before: str | None = None, after: str | None = None
 ) -> list[Strategy]:
     """The list with one strategy more."""
-    if not isinstance(getattr(strategy, "name", None), str) or not callable(getattr(strategy, "attempt", None)):
-        raise TypeError(f"a strategy has a name (a string) and a method attempt(problem), unlike {strategy!r}")
+    name, method = getattr(strategy, "name", None), getattr(strategy, "attempt", None)
+    if not isinstance(name, str) or not callable(method):
+        raise TypeError(f"a strategy has a name (string) and a method attempt(problem), unlike {strategy!r}")
     if before is not None and after is not None:
         raise ValueError("give before= or after=, not both")
     names = [s.name for s in found]
@@ -142,5 +143,6 @@ def attempt(problem: Problem) -> ClosedForm | None:
         if isinstance(answer, ClosedForm):
             return answer
         if answer is not None:
-            report(f"strategy {strategy.name!r}", TypeError(f"attempt returned {answer!r}, which is no ClosedForm"))
+            wrong = TypeError(f"attempt returned {answer!r}, which is no ClosedForm")
+            report(f"strategy {strategy.name!r}", wrong)
     return None
