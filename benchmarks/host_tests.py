@@ -99,8 +99,10 @@ def _call(function: Callable[[], Any]) -> tuple[str, str]:
 
 def run_all(work: list[tuple[str, str]], jobs: int, seconds: float) -> list[Run]:
     """Run (test, mode) pairs, each in a process of its own, at most ``jobs`` at a time."""
-    context = multiprocessing.get_context("fork" if sys.platform == "linux" else "spawn")
-    waiting, running, done = list(reversed(work)), [], []
+    context: Any = multiprocessing.get_context("fork" if sys.platform == "linux" else "spawn")
+    waiting = list(reversed(work))
+    running: list[tuple[str, str, Any, Connection, float]] = []
+    done: list[Run] = []
     while waiting or running:
         while waiting and len(running) < jobs:
             test, mode = waiting.pop()
