@@ -138,6 +138,14 @@ def converge_product(term: Term, facts: Facts) -> Convergence | str:
     (s < 7/2) & (s > -nu)
     """
     result = Convergence(Region(facts))
+    reason = restrict_kernels(result, term, facts)
+    if reason is not None:
+        return reason
+    return "diverges" if result.region.empty else result
+
+
+def restrict_kernels(result: Convergence, term: Term, facts: Facts, powers: bool = True) -> str | None:
+    """Add what one term demands; without ``powers`` only what a sum of terms cannot cancel."""
     for kernel in term.kernels:
         # an exponential states its own condition through its rate, and only where nothing stronger decays
         if kernel.condition is not S.true and (kernel.name != "exp" or kernel.wave is not None):
@@ -148,13 +156,12 @@ def converge_product(term: Term, facts: Facts) -> Convergence | str:
         if len(known) < len(lists):
             return "growth"
         for combination in product(*known):
+            if not powers and all(p.power.is_zero for p in combination):
+                continue
             reason = _restrict(result, combination, term.power, end, facts)
             if reason is not None:
                 return reason
-    reason = _finite_points(result, term.kernels)
-    if reason is not None:
-        return reason
-    return "diverges" if result.region.empty else result
+    return _finite_points(result, term.kernels)
 
 
 def _restrict(
@@ -250,4 +257,13 @@ def _one_sided(gammas: GammaProduct) -> bool:
     return len({A > 0 for _, A, _ in gammas.factors}) == 1
 
 
-__all__ = ["Component", "Convergence", "components", "converge_product", "polar_scale"]
+__all__ = [
+    "INFINITE_END",
+    "ZERO_END",
+    "Component",
+    "Convergence",
+    "components",
+    "converge_product",
+    "polar_scale",
+    "restrict_kernels",
+]

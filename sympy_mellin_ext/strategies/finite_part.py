@@ -88,10 +88,10 @@ def _survives(exponent: Expr, pieces: list[Piece], end: int) -> bool:
             while len(totals) <= j:
                 totals.append([])
             totals[j].append(c)
-    return any(not _vanishes(Add(*column)) for column in totals)
+    return any(not vanishes(Add(*column)) for column in totals)
 
 
-def _vanishes(total: Expr) -> bool:
+def vanishes(total: Expr) -> bool:
     """Exact zero test for the small expressions that coefficients are; False when it cannot be shown."""
     if total is S.Zero:
         return True
@@ -164,7 +164,7 @@ def _infinity(pieces: Sequence[Piece], edges: list[Edge], conditional: dict[int,
             for j, c in enumerate(piece.coefficients(leading, end)):
                 columns.setdefault(j, []).append(c)
         totals = {j: Add(*column) for j, column in columns.items()}
-        top = max((j for j, total in totals.items() if not _vanishes(total)), default=None)
+        top = max((j for j, total in totals.items() if not vanishes(total)), default=None)
         if top is None:
             return None
         sign = totals[top] * (end * -1) ** top  # log(x) is negative near 0
@@ -199,7 +199,7 @@ def poles_cancel(pieces: Sequence[Piece], principal: bool) -> bool:
             parts.setdefault(a, {}).setdefault(order, []).append(total.coefficient(order))
     for orders in parts.values():
         for order, column in orders.items():
-            if not (principal and order == -1) and not _vanishes(Add(*column)):
+            if not (principal and order == -1) and not vanishes(Add(*column)):
                 return False
     return True
 

@@ -14,18 +14,19 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 
-from sympy import Add, Expr, Max, Min, S, oo
-from sympy.logic.boolalg import Boolean
+from sympy import Add, Expr, Max, Min, S, Symbol, oo
 
-from ..behaviour import INFINITE_END, ZERO_END, Convergence, converge_product
+from ..behaviour import Convergence, converge_product
 from ..closed_form import ClosedForm, Step
 from ..matching import Term, read_terms
 from ..pieces import Piece
 from ..problem import Problem
-from ..region import Facts, Region, real_part
-from .master_theorem import closed_form_of_pieces
+from ..region import Facts, real_part
+from .finite_part import total_value
 from .parseval import parseval
 from .subtraction import subtract_head
+from .tidy import tidy
+from .totals import converge_total
 
 _SOURCE = "DLMF 1.14.39"
 
@@ -49,76 +50,78 @@ class MellinBarnes:
 def closed_form_of_products(problem: Problem, terms: Sequence[Term], name: str) -> ClosedForm | None:
     """The closed form of a sum of terms with at most two kernels each."""
     facts = problem.facts
-    single = [t for t in terms if len(t.kernels) < 2]
-    double: list[tuple[Term, Convergence]] = []
-    for term in terms:
-        if len(term.kernels) < 2:
-            continue
-        converged = converge_product(term, facts)
-        if isinstance(converged, str):
-            split = subtract_head(term, facts) if len(terms) > 1 and converged == "diverges" else None
+    parts: Sequence[Term] = terms
+    if len(terms) > 1:
+        total = converge_total(terms, facts)
+        if isinstance(total, str):
+            return problem.refuse(total, "the sum at 0 or at oo")
+        converged = total.convergence
+        if total.hits():
+            split = _regularised(terms, facts)
             if split is None:
-                return problem.refuse(converged, f"the product of {_names(term)} at 0 or at oo")
-            term, converged, heads = split
-            single += heads
-        double.append((term, converged))
-    region = Region(facts)
-    for _, converged in double:
-        region = region.meet(converged.region)
-    rest = None
-    if single:
-        rest = closed_form_of_pieces(problem, [Piece.of_term(t) for t in single], name)
-        if rest is None:
-            return None
-        region = region.holds(rest.condition)
-    if region.empty:
-        return problem.refuse("diverges", "the terms converge nowhere together")
-    values = [] if rest is None else [rest.value]
-    for term, _ in double:
-        value = parseval(term, facts, region)
+                return problem.refuse("diverges", "terms with poles that cancel, and no way to part them")
+            parts = split
+    else:
+        outcome = converge_product(terms[0], facts)
+        if isinstance(outcome, str):
+            return problem.refuse(outcome, f"the product of {_names(terms[0])} at 0 or at oo")
+        converged = outcome
+    condition = converged.region.to_boolean()
+    if condition is S.false:
+        return problem.refuse("empty region", "the conditions contradict one another")
+    values = []
+    double = [t for t in parts if len(t.kernels) > 1]
+    for term in double:
+        value = parseval(term, facts, converged.region)
         if value is None:
             return problem.refuse("no kernel", f"no closed form of the Mellin-Barnes integral of {_names(term)}")
         values.append(value)
-    total = values[0] if len(values) == 1 else Add(*values)
-    condition = region.to_boolean()
-    if condition is S.false:
-        return problem.refuse("empty region", "the conditions contradict one another")
-    kernels = [k for t, _ in double for k in t.kernels]
+    if len(double) < len(parts):
+        values.append(total_value([Piece.of_term(t) for t in parts if len(t.kernels) < 2]))
+    value = values[0] if len(values) == 1 else tidy(Add(*values))
+    if value.has(S.NaN, S.ComplexInfinity, S.Infinity, S.NegativeInfinity):
+        return problem.refuse("diverges", "the formula is not finite")
+    kernels = list(dict.fromkeys(k for t in terms for k in t.kernels))
     sources = tuple(dict.fromkeys(k.source for k in kernels if k.source))
-    special: tuple[tuple[Boolean, Expr], ...] = ()
-    if rest is not None and rest.special:
-        others = Add(*values[1:])
-        special = tuple((where, value + others) for where, value in rest.special)
     return ClosedForm(
-        total,
+        value,
         condition,
-        _strip([c for _, c in double], problem.reference or double[0][0].power, rest),
+        _strip(converged, problem.reference or terms[0].power),
         name,
         (
-            *(Step(f"kernel {k.name}, its transform", k.source) for k in kernels),
-            Step("two transforms joined to one contour integral", _SOURCE, total),
+            *(Step(f"kernel {k.name}, its transform", k.source, k.product.as_expr(Symbol("s"))) for k in kernels),
+            Step("two transforms joined to one contour integral", _SOURCE, value),
         ),
         (*sources, _SOURCE),
-        special,
     )
+
+
+def _regularised(terms: Sequence[Term], facts: Facts) -> list[Term] | None:
+    """Products that diverge at 0, without the first terms of a kernel there; those terms by themselves."""
+    parts: list[Term] = []
+    for term in terms:
+        if len(term.kernels) < 2 or not isinstance(converge_product(term, facts), str):
+            parts.append(term)
+            continue
+        split = subtract_head(term, facts)
+        if split is None:
+            return None
+        rest, heads = split
+        parts += [rest, *heads]
+    return parts
 
 
 def _names(term: Term) -> str:
     return " and ".join(k.name for k in term.kernels)
 
 
-def _strip(
-    found: Sequence[Convergence], reference: Expr, rest: ClosedForm | None
-) -> tuple[Expr, Expr]:
+def _strip(found: Convergence, reference: Expr) -> tuple[Expr, Expr]:
     """Bounds of Re s for the integrand without ``x**reference``, ``reference = s - 1``."""
-    lower = [real_part((reference - e).expand()) for c in found for e in c.at_zero]
-    upper = [real_part((reference - e).expand()) for c in found for e in c.at_infinity]
-    if rest is not None and rest.strip is not None:
-        lower.append(rest.strip[0])
-        upper.append(rest.strip[1])
+    lower = [real_part((reference - e).expand()) for e in found.at_zero]
+    upper = [real_part((reference - e).expand()) for e in found.at_infinity]
     return (Max(*lower) if lower else -oo), (Min(*upper) if upper else oo)
 
 
 STRATEGIES = (MellinBarnes(),)
 
-__all__ = ["INFINITE_END", "ZERO_END", "Facts", "MellinBarnes", "closed_form_of_products"]
+__all__ = ["MellinBarnes", "closed_form_of_products"]

@@ -4,26 +4,7 @@ from __future__ import annotations
 from collections.abc import Iterator
 from dataclasses import replace
 
-from sympy import (
-    Add,
-    Derivative,
-    Dummy,
-    Expr,
-    I,
-    Integer,
-    Mul,
-    Piecewise,
-    Pow,
-    S,
-    Subs,
-    Symbol,
-    exp,
-    hyper,
-    log,
-    meijerg,
-    pi,
-    re,
-)
+from sympy import Add, Derivative, Dummy, Expr, I, Piecewise, Pow, S, Subs, exp, hyper, meijerg, pi
 
 from ..behaviour import polar_scale
 from ..gamma import Factor
@@ -36,6 +17,7 @@ from ..kernels.bessel import ROWS as BESSEL_ROWS
 from ..kernels.elementary import COS, SIN
 from ..matching import Kernel, Term, Wave
 from ..region import Facts, Region
+from .continuation import conjugate_sum, holomorphic, single_valued
 from .tidy import tidy
 
 _BAD = (S.NaN, S.ComplexInfinity, S.Infinity, S.NegativeInfinity)
@@ -128,19 +110,16 @@ def _grows(kernel: Kernel) -> bool:
     return kernel.wave is not None and not kernel.wave.real
 
 
-def _uncertain(kernel: Kernel, facts: Facts) -> bool:
-    return facts.sign(kernel.product.scale) != 1
-
-
 def _pair(term: Term, facts: Facts, region: Region) -> Expr | None:
-    """The value for two kernels, the second of which gives its scale to the power in front."""
+    """The value for two kernels: ``eta2**(-v)*F(eta1*eta2**(-rho))``, F the inverse transform of the product.
+
+    The formula is found for positive scales and continued to the others.
+    """
 
     def rank(kernel: Kernel) -> tuple[bool, bool, bool]:
-        return (
-            _grows(kernel),
-            kernel.wave is None and _uncertain(kernel, facts),
-            kernel.name != "exp",
-        )
+        scale = kernel.product.scale
+        unknown = facts.real(scale) and facts.sign(scale) != 1
+        return _grows(kernel), unknown, kernel.name != "exp"
 
     first, second = sorted(term.kernels, key=rank, reverse=True)
     rho = first.ratio / second.ratio
@@ -157,127 +136,77 @@ def _pair(term: Term, facts: Facts, region: Region) -> Expr | None:
     for a, A, e in second.product.factors:
         factors.append(Factor((a + A * v).expand(), -A * rho, e))
     rows = cancel(tuple(factors))
+    scales = [_certain(k, facts) or Dummy("eta", positive=True) for k in (first, second)]
+    z = scales[0] * positive_power(scales[1], -rho)
+    value = _entire_series(rows, first.wave, z) if _grows(first) else inverse_mellin(rows, z, facts)
+    if value is None:
+        return None
     size = second.ratio if second.ratio.is_positive else -second.ratio
     constant = term.coefficient * first.product.constant * second.product.constant / size
-    values = []
-    for c1, eta1 in _scales(first):
-        for c2, eta2 in _scales(second):
-            value = _joined(rows, first, eta1, eta2, rho, v, facts, region)
-            if value is None:
-                return None
-            values.append(constant * c1 * c2 * value)
-    if len(values) == 1:
-        return tidy(values[0])
-    if len(values) == 2:
-        return _conjugates(values)
-    return None
+    value = tidy(constant * positive_power(scales[1], (-v).expand()) * value)
+    for kernel, scale in zip((first, second), scales, strict=True):
+        if isinstance(scale, Dummy) and value is not None:
+            value = _at_true_scale(value, scale, kernel, region)
+    return value
 
 
-def _scales(kernel: Kernel) -> list[tuple[Expr, Expr]]:
-    """(coefficient, scale) of the rotated kernels that a kernel is the sum of."""
-    wave = kernel.wave
-    if wave is None or not wave.real:
-        return [(S.One, kernel.product.scale)]
-    real, imaginary = polar_scale(kernel)
-    return [(exp(-turn * I * wave.phase) / 2, real + turn * I * imaginary) for turn in (1, -1)]
-
-
-def _joined(
-    rows: tuple[Factor, ...], first: Kernel, eta1: Expr, eta2: Expr, rho: Expr, v: Expr, facts: Facts, region: Region
-) -> Expr | None:
-    """``eta2**(-v) * F(eta1*eta2**(-rho))`` with F the inverse transform of the rows."""
-    front = positive_power(eta2, (-v).expand())
-    z = eta1 * positive_power(eta2, -rho)
-    if _grows(first):
-        assert first.wave is not None
-        found = _entire_series(rows, first.wave, z)
-        return None if found is None else front * found
-    if z.is_positive:
-        found = inverse_mellin(rows, z, facts)
-        return None if found is None else front * found
-    if not facts.real(z):
-        kind = "complex"
-    else:
-        kind = "positive" if region.sign(z) == 1 else "real"
-    d = Dummy("z", positive=True)
-    found = inverse_mellin(rows, d, facts)
-    if found is None or (kind == "real" and not _single_valued(found, d)) or (
-        kind == "complex" and not _in_half_plane(found, d, rho)
-    ):
+def _certain(kernel: Kernel, facts: Facts) -> Expr | None:
+    """The scale where it is positive and the only one."""
+    if kernel.wave is not None and kernel.wave.real:
         return None
-    # eta1 and eta2 have their own principal powers: z**e may not be split otherwise
-    moves = {
-        node: positive_power(eta1, node.exp) * positive_power(eta2, (-rho * node.exp).expand())
-        for node in sorted(found.atoms(Pow), key=str)
-        if node.base == d
-    }
-    moves[d] = z
-    return front * found.xreplace(moves)
+    scale = kernel.product.scale
+    return scale if scale.is_positive else None
 
 
-def _entire_series(rows: tuple[Factor, ...], wave: Wave, z: Expr) -> Expr | None:
+def _at_true_scale(value: Expr, eta: Dummy, kernel: Kernel, region: Region) -> Expr | None:
+    """A formula for positive ``eta``, continued to the scale of the kernel."""
+    wave, scale = kernel.wave, kernel.product.scale
+    if wave is not None and wave.real:
+        if not holomorphic(value, eta, S.Half):
+            return None
+        real, imaginary = polar_scale(kernel)
+        return conjugate_sum(value, eta, real, imaginary, wave.phase)
+    if region.facts.real(scale):
+        if region.sign(scale) != 1 and not single_valued(value, eta):
+            return None
+    elif not holomorphic(value, eta, kernel.product.lam / 2):
+        return None
+    moves = {n: positive_power(scale, n.exp) for n in sorted(value.atoms(Pow), key=str) if n.base == eta}
+    return value.xreplace({**moves, eta: scale})
+
+
+def _entire_series(rows: tuple[Factor, ...], wave: Wave | None, z: Expr) -> Expr | None:
     """The growing kernel's own series, integrated term by term against the other kernel.
 
     It converges where the other kernel decays faster, and gives the value there.
     """
     norm = normalise(rows)
-    if norm.signature.delta < 0:
+    if wave is None or norm.signature.delta < 0:
         return None
     w = Dummy("w", positive=True)
     series = left_series(norm.signature, w)
-    if series is None or series.head is not S.Zero:
-        return None
     turn = wave.angle * norm.power / pi
+    if series is None or series.head is not S.Zero or not turn.is_Integer:
+        return None
     size = norm.scale * positive_power(z, norm.power)
     parts = []
     for tail in series.tails:
-        if not turn.is_Integer:
-            return None
-        sign = tail.sign * (-1) ** int(turn)
         phase = exp((I * (wave.angle * norm.power * tail.exponent - wave.phase)).expand())
-        f = named_pfq(tail.upper, tail.lower, sign * w)
-        if f is None:
-            upper, lower = list(tail.upper), list(tail.lower)
-            for a in tail.upper:
-                if a in lower:
-                    upper.remove(a)
-                    lower.remove(a)
-            f = hyper(upper, lower, sign * w)
-        parts.append((tail.coefficient, phase, tail.exponent, f))
-    total = [norm.constant * c * phase * positive_power(size, e) * f.xreplace({w: size}) for c, phase, e, f in parts]
-    return Add(*total)
+        f = _pfq(tail.upper, tail.lower, tail.sign * (-1) ** int(turn) * w)
+        parts.append(norm.constant * tail.coefficient * phase * positive_power(size, tail.exponent) * f.xreplace({w: size}))
+    return Add(*parts)
 
 
-# -- continuation to other arguments -------------------------------------------------------------------------
-
-
-def _single_valued(expr: Expr, z: Symbol) -> bool:
-    """Whether a formula for z > 0 is one analytic function on the whole real line."""
-    if expr.has(Piecewise, meijerg, log):
-        return False
-    for node in expr.atoms(Pow):
-        if node.base.has(z) and not (node.exp.is_Integer and (node.exp > 0 or node.base == z)):
-            return False
-    from sympy import besselk, bessely, expint, uppergamma
-
-    return not any(node.has(z) for node in expr.atoms(besselk, bessely, expint, uppergamma))
-
-
-def _in_half_plane(expr: Expr, z: Symbol, rho: Expr) -> bool:
-    """Whether principal branches serve for abs(arg(z)) < pi/2 times the larger of 1 and abs(rho)."""
-    if expr.has(Piecewise):
-        return False
-    spread = _highest_power(expr, z)
-    return bool(spread * max(S.One, abs(rho)) <= 2)
-
-
-def _highest_power(expr: Expr, z: Symbol) -> Expr:
-    return max([abs(n.exp) for n in expr.atoms(Pow) if n.base == z and n.exp.is_Rational], default=S.One)
-
-
-def _conjugates(values: list[Expr]) -> Expr:
-    """The sum of two conjugate terms."""
-    return Add(*(tidy(v) for v in values))
+def _pfq(upper: tuple[Expr, ...], lower: tuple[Expr, ...], z: Expr) -> Expr:
+    found = named_pfq(upper, lower, z)
+    if found is not None:
+        return found
+    ups, downs = list(upper), list(lower)
+    for a in upper:
+        if a in downs:
+            ups.remove(a)
+            downs.remove(a)
+    return hyper(ups, downs, z)
 
 
 __all__ = ["parseval"]

@@ -11,7 +11,7 @@ from dataclasses import replace
 
 from sympy import S
 
-from ..behaviour import Convergence, converge_product
+from ..behaviour import converge_product
 from ..gamma import Factor, GammaProduct
 from ..gamma.product import cancel
 from ..matching import Kernel, Term
@@ -62,7 +62,7 @@ def without_head(kernel: Kernel, count: int) -> tuple[Kernel, list[Term]] | None
     return replace(kernel, name=f"{kernel.name} without its head", product=rest), terms
 
 
-def subtract_head(term: Term, facts: Facts) -> tuple[Term, Convergence, list[Term]] | None:
+def subtract_head(term: Term, facts: Facts) -> tuple[Term, list[Term]] | None:
     """Write a divergent product as a convergent one and single kernels, by terms of one kernel at 0."""
     for count in range(1, _MOST_SUBTRACTED + 1):
         for place in (0, 1):
@@ -72,13 +72,12 @@ def subtract_head(term: Term, facts: Facts) -> tuple[Term, Convergence, list[Ter
                 continue
             rest, heads = split
             changed = replace(term, kernels=(rest, other))
-            converged = converge_product(changed, facts)
-            if not isinstance(converged, str):
+            if not isinstance(converge_product(changed, facts), str):
                 singles = [
                     Term(term.coefficient * h.coefficient, term.power + h.power, term.logs + h.logs, (other,))
                     for h in heads
                 ]
-                return changed, converged, singles
+                return changed, singles
     return None
 
 

@@ -1,14 +1,15 @@
-"""Shorter ways to write what the inverse transform returns: exact rewritings only, no search."""
+"""Shorter ways to write a value once its front factor has joined it: exact rewritings only, no search."""
 from __future__ import annotations
 
-from sympy import Add, Expr, Gt, Integer, Lt, Mul, Piecewise, Pow, Rational, S, gamma, igcd
+from sympy import Add, Expr, Gt, Integer, Lt, Mul, Piecewise, Pow, Rational, S, gamma, igcd, log
 from sympy.logic.boolalg import Boolean
 
 from ..gamma.shortest import shortest_quotient
+from .tidy_functions import half_integer_bessel, joined_logarithms, over_common_denominator
 
 
 def tidy(expr: Expr) -> Expr:
-    """Powers of one base joined, Gammas shortened, ``(1 + b**2/a**2)**p`` written ``(a**2 + b**2)**p/a**(2*p)``.
+    """Powers of one base joined, Gammas shortened, denominators under powers taken out, logarithms added.
 
     Examples
     --------
@@ -21,10 +22,24 @@ def tidy(expr: Expr) -> Expr:
     if not expr.args or not expr.has(Pow, gamma):
         return expr
     if isinstance(expr, Piecewise):
-        return expr.func(*((tidy(e), _side_of_one(c)) for e, c in expr.args))
+        return _piecewise(S.One, expr)
     if expr.is_Add:
-        return common_factor(Add(*(tidy(a) for a in expr.args)))
+        return _sum([tidy(a) for a in expr.args])
     return _product(expr)
+
+
+def _sum(terms: list[Expr]) -> Expr:
+    total = Add(*terms)
+    if total.is_Add and total.has(log):
+        total = joined_logarithms(total)
+    return common_factor(total)
+
+
+def _piecewise(front: Expr, pieces: Piecewise) -> Expr:
+    branches = [(tidy(front * e), _side_of_one(c)) for e, c in pieces.args]
+    if len(branches) == 2 and branches[0][0] == branches[1][0]:
+        return branches[0][0]
+    return Piecewise(*branches)
 
 
 def _inside(expr: Expr) -> Expr:
@@ -40,17 +55,17 @@ def _product(expr: Expr) -> Expr:
     sums = [a for a in args if a.is_Add]
     if len(sums) == 1:
         front = Mul(*(a for a in args if a is not sums[0]))
-        return common_factor(Add(*(_product(Mul(front, t)) for t in sums[0].args)))
+        return _sum([_product(Mul(front, t)) for t in sums[0].args])
     branches = [a for a in args if isinstance(a, Piecewise)]
     if len(branches) == 1:
         front = Mul(*(a for a in args if a is not branches[0]))
-        return Piecewise(*((tidy(front * e), _side_of_one(c)) for e, c in branches[0].args))
+        return _piecewise(front, branches[0])
     flat: list[Expr] = []
     for a in args:
         if a.is_Pow:
             flat.extend(Mul.make_args(_power(_inside(a.base), a.exp)))
         else:
-            flat.append(a if isinstance(a, gamma) or a.is_Atom else _inside(a))
+            flat.append(a if isinstance(a, gamma) or a.is_Atom else _inside(half_integer_bessel(a)))
     return _joined(flat)
 
 
@@ -143,24 +158,6 @@ def _side_of_one(condition: Boolean) -> Boolean:
     return condition.func(above, below)
 
 
-def over_common_denominator(total: Expr) -> Expr:
-    """A sum as its numerator times powers of positive atoms, where the terms have such denominators."""
-    lowest: dict[Expr, Expr] = {}
-    number = 1
-    for term in total.args:
-        c, rest = term.as_coeff_Mul()
-        if c.is_Rational:
-            number = number * c.q // int(igcd(number, c.q))
-        for factor in Mul.make_args(rest):
-            base, exponent = factor.as_base_exp()
-            if exponent.is_Rational and exponent.is_negative and base.is_positive and not base.is_Rational:
-                lowest[base] = min(lowest.get(base, S.Zero), exponent)
-    if not lowest and number == 1:
-        return total
-    common = Mul(number, *(Pow(b, -e) for b, e in lowest.items()))
-    return Mul(Add(*(t * common for t in total.args)), 1 / common, evaluate=True)
-
-
 def common_factor(total: Expr) -> Expr:
     """What all the terms of a sum have in common, taken in front."""
     if not total.is_Add:
@@ -206,4 +203,4 @@ def common_factor(total: Expr) -> Expr:
     return Mul(content, front, rest)
 
 
-__all__ = ["common_factor", "over_common_denominator", "tidy"]
+__all__ = ["common_factor", "tidy"]
