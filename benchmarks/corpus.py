@@ -77,8 +77,8 @@ def _received(pipe: Connection, entry: Entry, late: bool) -> Result:
 
 
 def table(results: Sequence[Result], stock: bool) -> list[str]:
-    """Counts per family, and the families' percentages."""
-    columns = [*OUTCOMES, "all", "%"]
+    """Counts per family, the families' percentages, and how many did not need SymPy's own integrator."""
+    columns = [*OUTCOMES, "all", "%", "own"]
     head = f"{'family':18}" + "".join(f"{c:>12}" for c in columns) + ("   stock     %" if stock else "")
     lines = [head, "-" * len(head)]
     families: dict[str, list[Result]] = defaultdict(list)
@@ -87,7 +87,8 @@ def table(results: Sequence[Result], stock: bool) -> list[str]:
     for name, members in [*sorted(families.items()), ("all", list(results))]:
         counts = Counter(r["outcome"] for r in members)
         share = f"{100 * counts[SOLVED] / len(members):.1f}"
-        cells = [*(counts[c] or "" for c in OUTCOMES), len(members), share]
+        own = sum(r["outcome"] == SOLVED and bool(r.get("strategy")) for r in members)
+        cells = [*(counts[c] or "" for c in OUTCOMES), len(members), share, own]
         if name == "all":
             lines.append("-" * len(head))
         line = f"{name:18}" + "".join(f"{c:>12}" for c in cells)
@@ -123,7 +124,7 @@ def regions(results: Sequence[Result]) -> list[str]:
     counted = [r for r in results if "region" in r]
     counts = Counter(r["region"] for r in counted)
     lines = ["regions at 60 random points each: "
-             + ", ".join(f"{k} {counts[k]}" for k in ("exact", "narrow", "wide", "none"))]
+             + ", ".join(f"{k} {counts[k]}" for k in ("exact", "narrow", "wide"))]
     for r in counted:
         if r["region"] != "exact":
             lines.append(f"  {r['region']:7}{r['id']:20} {shortened(r['condition'], 70)} at {r['witness']}")
@@ -143,9 +144,12 @@ def unsolved(results: Sequence[Result]) -> list[str]:
     lines = []
     for r in results:
         if r["outcome"] != SOLVED:
-            lines.append(f"{r['outcome']:12}{r['id']:20} {shortened(r['detail'])}")
+            by = f" [{r['strategy']}]" if r.get("strategy") else ""
+            lines.append(f"{r['outcome']:12}{r['id']:20} {shortened(r['detail'])}{by}")
             if r["answer"]:
                 lines.append(f"{'':32} {shortened(r['answer'])}")
+        if r.get("trouble"):
+            lines.append(f"{'trouble':12}{r['id']:20} {shortened(r['trouble'])}")
     return lines
 
 

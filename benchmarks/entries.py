@@ -50,7 +50,7 @@ def parse(record: dict[str, Any]) -> Entry:
     for variable, lower, _ in ranges:
         # names of the list shadow SymPy's only where the list declares them
         below = sympify(lower, locals=names)
-        kind = "real" if below.is_negative else "positive"
+        kind = "real" if below.is_extended_negative else "positive"
         names[variable] = Symbol(variable, **ASSUMPTIONS[kind])
 
     def read(text: str) -> Any:

@@ -121,8 +121,7 @@ def measure(entry: Entry, seconds: float, stock: bool, regions: bool, rounds: in
     }
     if outcome == SOLVED and entry.points:
         result["ops"] = [int(count_ops(main_branch(answer))), int(count_ops(entry.value))]
-    if regions and entry.valid is not None:
-        result.update(_region(entry, seconds))
+    result.update(_own(entry, seconds, regions))
     if stock:
         other, other_spent, other_outcome, other_detail = timed(sympy.integrate, entry, seconds)
         if not other_outcome:
@@ -149,17 +148,21 @@ def _judged(answer: Any, entry: Entry) -> tuple[str, str]:
         return ERROR, f"the answer could not be evaluated: {type(error).__name__}: {error}"
 
 
-def _region(entry: Entry, seconds: float) -> dict[str, Any]:
+def _own(entry: Entry, seconds: float, regions: bool) -> dict[str, Any]:
+    """Whether the answer is a closed form of this package, and how its region compares."""
     from sympy_mellin_ext import closed_form
 
     try:
         with time_limit(seconds):
             found = closed_form(entry.integrand, *entry.limits)
         if found is None:
-            return {}
-        verdict, witness = compare_region(found.condition, entry)
-        return {"region": verdict, "witness": witness, "condition": str(found.condition)}
+            return {"strategy": ""}
+        result = {"strategy": found.strategy or "unnamed"}
+        if regions and entry.valid is not None:
+            verdict, witness = compare_region(found.condition, entry)
+            result.update(region=verdict, witness=witness, condition=str(found.condition))
+        return result
     except OutOfTime:
-        return {"region": "none", "witness": "time", "condition": ""}
+        return {"strategy": "", "trouble": f"closed_form: over {seconds:g} s"}
     except Exception as error:  # reported as an outcome of its own
-        return {"region": "none", "witness": f"{type(error).__name__}: {error}", "condition": ""}
+        return {"strategy": "", "trouble": f"closed_form: {type(error).__name__}: {error}"}

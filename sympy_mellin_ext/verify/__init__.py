@@ -1,4 +1,5 @@
 """Closed forms against numerical quadrature."""
 from .quadrature import quad
+from .record import Verification, verify
 
-__all__ = ["quad"]
+__all__ = ["Verification", "quad", "verify"]

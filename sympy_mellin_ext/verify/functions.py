@@ -6,6 +6,7 @@ packages, whose definition differs, or which mpmath lacks but can be composed.
 from __future__ import annotations
 
 from collections.abc import Callable
+from functools import lru_cache
 from typing import Any
 
 from mpmath import mp
@@ -66,8 +67,133 @@ def _spherical(kind: str) -> Callable[[Number, Number], Number]:
     return value
 
 
+_LARGE = 30
+
+
+@lru_cache(maxsize=256)
+def _k_nodes(nu: Number, precision: int) -> tuple[Number, list[tuple[Number, Number]]]:
+    """Step, and (cosh(t), cosh(nu*t)) at its multiples, for the trapezoidal rule on DLMF 10.32.9."""
+    with mp.workprec(precision):
+        need = precision * mp.ln2 + 4
+        # the integrand is analytic for abs(Im t) < pi/2 and below exp(-z*cos(Im t)) there
+        step = 2 * mp.pi * mp.mpf("1.25") / (need + mp.mpf("0.7") * _LARGE)
+        count = int(mp.acosh(1 + need + 6 * nu) / step) + 2
+        return step, [(mp.cosh(k * step), mp.cosh(nu * k * step)) for k in range(count)]
+
+
+def _besselk(nu: Number, z: Number) -> Number:
+    """K of real order and positive argument without the cancellation between I(-nu) and I(nu)."""
+    nu, z = mp.mpmathify(nu), mp.mpmathify(z)
+    if mp.im(z) == 0 and _far(nu, z):
+        return mp.sqrt(mp.pi / (2 * z)) * mp.exp(-z) * _expansion(nu, z, 1)
+    if mp.im(nu) or mp.im(z) or not 0 < z < _LARGE or abs(nu) > 12:
+        return mp.besselk(nu, z)
+    nu, z = abs(mp.re(nu)), mp.re(z)
+    if z > 1:
+        step, nodes = _k_nodes(nu, mp.prec)
+        total = mp.exp(-z) / 2
+        for c, weight in nodes[1:]:
+            term = weight * mp.exp(-z * c)
+            total += term
+            if term <= total * mp.eps / 16:
+                break
+        return total * step
+    return _k_series(int(nu), z) if mp.isint(nu) else mp.besselk(nu, z)
+
+
+def _k_series(n: int, z: Number) -> Number:
+    """K of integer order for small z (DLMF 10.31.1)."""
+    square, half = z * z / 4, z / 2
+    finite, series = _integer_order(n, square, mp.log(half), -1)
+    return finite / half**n / 2 - (-1) ** n * half**n * series
+
+
+def _y_series(n: int, z: Number) -> Number:
+    """Y of integer order for small z (DLMF 10.8.1)."""
+    square, half = z * z / 4, z / 2
+    finite, series = _integer_order(n, square, mp.log(half), 1)
+    return (2 * half**n * series - finite / half**n) / mp.pi
+
+
+def _integer_order(n: int, square: Number, logarithm: Number, sign: int) -> tuple[Number, Number]:
+    """The finite sum of the singular part, and sum (logarithm - digammas/2)*(-sign*square)**k/(k!(n+k)!)."""
+    finite = mp.fsum(mp.factorial(n - k - 1) / mp.factorial(k) * (sign * square) ** k for k in range(n))
+    term, digammas = 1 / mp.factorial(n), mp.digamma(1) + mp.digamma(n + 1)
+    total, k = mp.zero, 0
+    while True:
+        change = term * (logarithm - digammas / 2)
+        total += change
+        if abs(change) <= abs(total) * mp.eps / 16:
+            return finite, total
+        k += 1
+        term *= -sign * square / (k * (n + k))
+        digammas += mp.one / k + mp.one / (n + k)
+
+
+def asymptotic_from(nu: Number) -> Number:
+    """Where Hankel's expansion has the working precision: its least term is about exp(-2*abs(z))."""
+    return mp.mpf("1.25") * (mp.dps + 4) + abs(nu) ** 2 / 2
+
+
+@lru_cache(maxsize=64)
+def _hankel_coefficients(nu: Number, precision: int) -> tuple[list[Number], list[int]]:
+    """The first of a_k(nu) of DLMF 10.17.1 and their binary magnitudes; `_expansion` adds to them."""
+    return [mp.one], [1]
+
+
+def _expansion(nu: Number, z: Number, unit: Number) -> Number:
+    """sum a_k(nu)*(unit/z)**k, which serves H (DLMF 10.17.5), K and I (DLMF 10.40.1-2)."""
+    coefficients, sizes = _hankel_coefficients(nu, mp.prec)
+    size, count = mp.mag(z) - 1, 1
+    while sizes[count - 1] - (count - 1) * size > -mp.prec - 4 and count < 20 + mp.prec // 2:
+        if count == len(sizes):
+            a = coefficients[-1] * (4 * nu * nu - (2 * count - 1) ** 2) / (8 * count)
+            coefficients.append(a)
+            sizes.append(mp.mag(a) if a else -10**9)
+        count += 1
+    total, t = mp.zero, unit / z
+    for a in reversed(coefficients[:count]):
+        total = total * t + a
+    return total
+
+
+def _hankel_expansion(nu: Number, z: Number, sign: int) -> Number:
+    turn = mp.mpc(0, sign)
+    wave = mp.exp(turn * (z - nu * mp.pi / 2 - mp.pi / 4))
+    return mp.sqrt(2 / (mp.pi * z)) * wave * _expansion(nu, z, turn)
+
+
+def _besseli(nu: Number, z: Number) -> Number:
+    nu, z = mp.mpmathify(nu), mp.mpmathify(z)
+    if mp.im(z) == 0 and _far(nu, z):
+        # the other exponential, exp(-z), is below the working precision there
+        return mp.exp(z) / mp.sqrt(2 * mp.pi * z) * _expansion(nu, z, -1)
+    return mp.besseli(nu, z)
+
+
+def _far(nu: Number, z: Number) -> bool:
+    return mp.im(nu) == 0 and mp.re(z) > 0 and abs(z) > asymptotic_from(nu)
+
+
+def _besselj(nu: Number, z: Number) -> Number:
+    nu, z = mp.mpmathify(nu), mp.mpmathify(z)
+    return mp.re(_hankel_expansion(nu, z, 1)) if mp.im(z) == 0 and _far(nu, z) else mp.besselj(nu, z)
+
+
+def _bessely(nu: Number, z: Number) -> Number:
+    nu, z = mp.mpmathify(nu), mp.mpmathify(z)
+    if mp.im(z) == 0 and _far(nu, z):
+        return mp.im(_hankel_expansion(nu, z, 1))
+    if mp.im(z) == 0 and 0 < z <= 1 and mp.isint(nu) and nu >= 0:
+        return _y_series(int(nu), mp.re(z))
+    return mp.bessely(nu, z)
+
+
 def _hankel(nu: Number, z: Number, sign: int) -> Number:
     """Through K (DLMF 10.27.8), where J and Y would cancel: the half-plane in which the function decays."""
+    nu, z = mp.mpmathify(nu), mp.mpmathify(z)
+    if _far(nu, z):
+        return _hankel_expansion(nu, z, sign)
     turn = mp.mpc(0, sign)
     if mp.im(z) * sign >= 0 and mp.re(z) > 0:
         return 2 / (mp.pi * turn) * mp.exp(-turn * nu * mp.pi / 2) * mp.besselk(nu, -turn * z)
@@ -142,6 +268,10 @@ TABLE: dict[str, Callable[..., Number]] = {
     "RisingFactorial": lambda x, n: mp.rf(x, n),
     "FallingFactorial": lambda x, n: mp.ff(x, n),
     "Heaviside": _heaviside,
+    "besselj": _besselj,
+    "bessely": _bessely,
+    "besselk": _besselk,
+    "besseli": _besseli,
     "hankel1": lambda nu, z: _hankel(nu, z, 1),
     "hankel2": lambda nu, z: _hankel(nu, z, -1),
     "airyaiprime": lambda z: mp.airyai(z, derivative=1),

@@ -16,8 +16,8 @@ from .rules import OutOfTime
 class Integrand:
     """f(x) with the parameters fixed.
 
-    Differences such as 1/(exp(x) - 1) - 1/x lose digits near a singular point, more the nearer one comes. `near`
-    measures that loss, once for each range of distances, and raises the working precision by it.
+    Differences such as 1/(exp(x) - 1) - 1/x lose digits near a singular point, more the nearer one comes.
+    `near` measures that loss, once for each range of distances, and raises the working precision by it.
     """
 
     def __init__(self, expr: Expr, variable: Symbol, point: Mapping[Symbol, Any], deadline: float) -> None:
@@ -71,11 +71,14 @@ class Integrand:
                     value = self(end + side * distance)
             except NUMERIC_ERRORS:
                 value = None  # a difference that vanished in a denominator, say
-            if value is not None and before is not None:
+            # a difference that came out as exactly zero has no digits at all
+            if value and before is not None:
                 change = abs(value - before[1])
                 if change <= abs(value) * mp.mpf(10) ** (3 - base) or change * distance <= negligible:
                     return before[0]
             before = None if value is None else (dps + extra, value)
+        if before is not None and before[1] == 0:
+            return dps
         self.doubtful = True
         return dps + 8 * 2**octave + 40
 

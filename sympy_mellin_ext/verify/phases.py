@@ -59,6 +59,7 @@ class Phases:
 
     def __init__(self, variable: Symbol, point: Mapping[Symbol, Any]) -> None:
         self.variable, self.point = variable, point
+        self.wild = False  # a periodic function of something that grows faster than any power
         self.opaque = False  # a periodic function inside another: its harmonics are not listed
 
     def growth(self, argument: Expr) -> tuple[Number, float] | None:
@@ -71,9 +72,14 @@ class Phases:
                 first, second, third = (mp.mpmathify(f(mp.mpf(10) ** k, *values)) for k in (24, 30, 36))
             except NUMERIC_ERRORS:
                 return None
+            if not all(mp.isfinite(v) for v in (first, second, third)):
+                return None
             if first == 0 or second == 0 or third == 0:
                 return None
             r = mp.log10(abs(third / second)) / 6
+            if r > 100:
+                self.wild = True
+                return None
             if r < 0.01 or abs(mp.log10(abs(second / first)) / 6 - r) > 1e-3:
                 return None
             close = Rational(int(mp.nint(r * 12)), 12)
@@ -103,7 +109,8 @@ class Phases:
         rule = _RULES.get(type(expr))
         if rule is not None:
             return rule(self, expr)
-        return self._harmonics(set().union(*[self.of(a) for a in expr.args if isinstance(a, Expr)], {_STEADY}))
+        inside = [self.of(a) for a in expr.args if isinstance(a, Expr)]
+        return self._harmonics({_STEADY}.union(*inside))
 
     def _product(self, left: set[Phase], right: set[Phase]) -> set[Phase]:
         if len(left) * len(right) > _MANY**2:
@@ -127,6 +134,8 @@ class Phases:
         return {((r, c),), ((r, -c),)} | extra
 
     def _exponential(self, argument: Expr) -> set[Phase]:
+        if not argument.has(I) and all(self.point.get(v, v).is_real for v in argument.free_symbols):
+            return {_STEADY}
         result: Phase = _STEADY
         for term in Add.make_args(expand(argument)):
             if self.of(term) != {_STEADY}:

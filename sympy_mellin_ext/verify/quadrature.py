@@ -4,10 +4,11 @@ from __future__ import annotations
 import time
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass, field
+from itertools import pairwise
 from typing import Any
 
 from mpmath import mp
-from sympy import Expr, Symbol, oo, sympify
+from sympy import Expr, Symbol, Tuple, oo, sympify
 
 from .functions import Number
 from .integrand import Integrand
@@ -15,12 +16,13 @@ from .numeric import NUMERIC_ERRORS, evaluate
 from .phases import Phase, Phases
 from .rules import Diverges, OutOfTime, Piece, SlowEnd, fejer, tanh_sinh
 from .singular import MARK_DIGITS, marks
-from .tails import frequencies, has_slow, rotated, split_by_phase, top_power, windowed
+from .tails import expansions_hold, frequencies, has_slow, rotated, split_by_phase, top_power, windowed
 
 # doublings of x that are looked at on each side of the scale, to see where the integrand has its mass
 _DOUBLINGS = 20
 # beyond so many radians an exponentially damped oscillation is treated as an undamped one
 _MANY_RADIANS = 2000
+_WIDE = 3
 
 
 @dataclass
@@ -35,6 +37,10 @@ class _Setting:
 
     def adopt(self, g: Integrand) -> None:
         self.tolerance = g.size * mp.mpf(10) ** (-self.digits - 2)
+
+
+class Wild(Exception):
+    """An oscillation that no power of x describes, such as cos(exp(x))."""
 
 
 def _settings(digits: int) -> list[_Setting]:
@@ -81,6 +87,8 @@ def quad(f: Any, limits: Any, point: Mapping[Any, Any] | None = None, digits: in
     1.5707963267949 True
     """
     expr, x, low, high, values = checked(f, limits, point)
+    if not seconds > 0:
+        raise ValueError(f"seconds: a positive number is accepted, not {seconds!r}")
     deadline = time.monotonic() + seconds
     results: list[Piece] = []
     note = ""
@@ -91,11 +99,13 @@ def quad(f: Any, limits: Any, point: Mapping[Any, Any] | None = None, digits: in
                     g = Integrand(expr, x, values, deadline)
                     results.append(_interval(g, low, high, values, setting))
                 except Diverges:
-                    if not g.doubtful:
+                    if not g.doubtful and not _hidden_oscillation(g, low, high):
                         return mp.inf, mp.zero, True, "the integral diverges"
-                    note = "the integrand loses its digits near a singular point"
+                    note = "it seems to diverge, but the integrand oscillates or loses its digits"
                 except SlowEnd:
                     note = "the integrand decays too slowly at an end"
+                except Wild:
+                    note = "the integrand oscillates faster than any power"
                 except OutOfTime:
                     note = f"not finished within {seconds:g} s"
                 except NUMERIC_ERRORS as error:
@@ -103,6 +113,25 @@ def quad(f: Any, limits: Any, point: Mapping[Any, Any] | None = None, digits: in
             if note:
                 return (results[0].value if results else mp.nan), mp.inf, False, note
         return _judged(results, g, digits)
+
+
+def _hidden_oscillation(g: Integrand, low: Expr, high: Expr) -> bool:
+    """Whether the integrand changes sign again and again far out (or near 0) without a phase known for it."""
+    reader = Phases(g.variable, g.point)
+    if any(reader.of(g.expr)) or oo not in (high, -low):
+        return False
+    changes = 0
+    before = None
+    for k in range(120):
+        x = mp.mpf(3) * mp.mpf("1.0617") ** k * (1 if high == oo else -1)
+        try:
+            value = g(x)
+        except (*NUMERIC_ERRORS, OutOfTime):
+            continue
+        sign = (mp.sign(mp.re(value)), mp.sign(mp.im(value)))
+        changes += before is not None and sign != before
+        before = sign
+    return changes > 6
 
 
 def _judged(results: list[Piece], g: Integrand, digits: int) -> tuple[Number, Number, bool, str]:
@@ -125,13 +154,12 @@ def _real(g: Integrand) -> bool:
     return all(sympify(v).is_real for v in g.point.values()) and not g.expr.has(sympify("I"))
 
 
-def checked(f: Any, limits: Any, point: Mapping[Any, Any] | None) -> tuple[
-        Expr, Symbol, Expr, Expr, dict[Symbol, Any]]:
-    """The arguments of `quad` as SymPy objects, with errors that name the argument."""
-    expr = sympify(f)
+def checked_limits(f: Any, limits: Any) -> tuple[Expr, Symbol, Expr, Expr]:
+    """Integrand, variable and ends as SymPy objects, with errors that name the argument."""
+    expr = sympify(f) if isinstance(f, (Expr, int, float, complex)) else f
     if not isinstance(expr, Expr):
         raise TypeError(f"f: an expression is accepted, not {type(f).__name__}")
-    if not isinstance(limits, (tuple, list)) and not hasattr(limits, "args"):
+    if not isinstance(limits, (tuple, list, Tuple)):
         raise TypeError(f"limits: a tuple (x, a, b) is accepted, not {type(limits).__name__}")
     ends = tuple(sympify(v) for v in limits)
     if len(ends) != 3:
@@ -139,6 +167,16 @@ def checked(f: Any, limits: Any, point: Mapping[Any, Any] | None) -> tuple[
     x, low, high = ends
     if not isinstance(x, Symbol):
         raise TypeError(f"limits: the variable must be a Symbol, not {x}")
+    for end in (low, high):
+        if not isinstance(end, Expr):
+            raise TypeError(f"limits: the ends must be expressions, not {end}")
+    return expr, x, low, high
+
+
+def checked(f: Any, limits: Any, point: Mapping[Any, Any] | None) -> tuple[
+        Expr, Symbol, Expr, Expr, dict[Symbol, Any]]:
+    """The arguments of `quad` as SymPy objects, with errors that name the argument."""
+    expr, x, low, high = checked_limits(f, limits)
     names = sorted((expr.free_symbols | low.free_symbols | high.free_symbols) - {x}, key=str)
     given = dict(point or {})
     values = {}
@@ -187,7 +225,7 @@ def _finite(g: Integrand, a: Number, b: Number, setting: _Setting) -> Piece:
         return _outer(_inverted(g), 1 / b, [], setting, at_mark=True)
     inside = marks(g.expr, g.variable, g.point, a, b)
     bounds = [a, *inside, b]
-    for p, q in zip(bounds, bounds[1:], strict=False):
+    for p, q in pairwise(bounds):
         for part in (mp.mpf("0.13"), mp.mpf("0.47"), mp.mpf("0.81")):
             try:
                 g.size = max(g.size, abs(g(p + part * (q - p))) * (q - p))
@@ -195,13 +233,14 @@ def _finite(g: Integrand, a: Number, b: Number, setting: _Setting) -> Piece:
                 continue
     setting.adopt(g)
     total = Piece(mp.zero, mp.zero)
-    for p, q in zip(bounds, bounds[1:], strict=False):
+    for p, q in pairwise(bounds):
         middle = p + (q - p) * setting.shift / (1 + setting.shift)
         total += _from_mark(g, p, 1, middle - p, setting) + _from_mark(g, q, -1, q - middle, setting)
     return total
 
 
-def _from_mark(g: Integrand, end: Number, side: int, length: Number, setting: _Setting, depth: int = 8) -> Piece:
+def _from_mark(g: Integrand, end: Number, side: int, length: Number, setting: _Setting,
+               depth: int = 8) -> Piece:
     """Integral over the piece of given length on one side of `end`, which may be singular."""
     def at(distance: Number) -> Number:
         return g.near(end, side, distance, length)
@@ -236,7 +275,7 @@ def _half_line(g: Integrand, setting: _Setting) -> Piece:
         first, last = points[0], points[-1]
         middle = first * setting.shift / (1 + setting.shift)
         total = _from_mark(g, first, -1, first - middle, setting)
-        for p, q in zip(points, points[1:], strict=False):
+        for p, q in pairwise(points):
             half = p + (q - p) * setting.shift / (1 + setting.shift)
             total += _from_mark(g, p, 1, half - p, setting) + _from_mark(g, q, -1, q - half, setting)
         beyond = last * (1 + setting.shift)
@@ -314,9 +353,11 @@ def _tail(g: Integrand, start: Number, setting: _Setting, heights: dict[int, Num
     omegas = frequencies(phases, r)
     _check_decay(heights, side, r)
     ways: list[Callable[[], Piece | None]] = [
-        lambda: windowed(g, start, r, omegas, setting.digits, setting.shift, setting.tolerance, setting.count),
+        lambda: windowed(g, start, r, omegas, setting.digits, setting.shift, setting.tolerance,
+                         setting.count),
         lambda: _split_tail(g, start, r, omegas, setting)]
-    if has_slow(phases, r):
+    # a window that is wide for the fastest oscillation costs more than the turned path
+    if has_slow(phases, r) or omegas[-1] > _WIDE * omegas[0]:
         ways.reverse()
     for way in ways:
         piece = way()
@@ -339,11 +380,14 @@ def _check_decay(heights: dict[int, Number], side: int, r: float) -> None:
             raise SlowEnd
 
 
-def _split_tail(g: Integrand, start: Number, r: float, omegas: list[float], setting: _Setting) -> Piece | None:
+def _split_tail(g: Integrand, start: Number, r: float, omegas: list[float],
+                setting: _Setting) -> Piece | None:
     parts = split_by_phase(g, r)
     if parts is None:
         return None
-    total = Piece(mp.zero, mp.zero)
+    beyond = max(start, expansions_hold(parts, g))
+    total = _body(g, start, beyond, setting)
+    start = beyond
     for part, side in zip(parts, (1, -1, 0), strict=True):
         if part == 0:
             continue
@@ -377,6 +421,8 @@ def _phases(g: Integrand) -> tuple[set[Phase], bool]:
     """Phases at infinity, empty if nothing oscillates; and whether they were guessed."""
     reader = Phases(g.variable, g.point)
     found = reader.of(g.expr)
+    if reader.wild:
+        raise Wild
     return (set() if not any(found) else found), reader.opaque
 
 

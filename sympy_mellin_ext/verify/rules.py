@@ -1,6 +1,7 @@
 """Quadrature rules on one piece: tanh-sinh where an end may be singular, Fejer's rule where nothing is.
 
-Takahasi and Mori, Publ. RIMS 9 (1974), for the double exponential rule; Waldvogel, BIT 46 (2006), for Fejer's.
+Takahasi and Mori, Publ. RIMS 9 (1974), for the double exponential rule; Waldvogel, BIT 46 (2006), for
+Fejer's.
 """
 from __future__ import annotations
 
@@ -12,10 +13,12 @@ from mpmath import mp
 
 from .functions import Number
 
-# beyond this the distance to the end is below 1e-1200: a slower decay counts as divergence or near it
-_LARGEST_T = 7.5
+# beyond this the distance to the end is below 1e-9000: a slower decay counts as divergence or near it
+_LARGEST_T = 9.5
 # never stop before this, so that a piece whose mass sits at an end is not taken for nothing
 _SMALLEST_T = 3
+# from here on a missing decay shows
+_CLEAR_T = 4.5
 
 
 class OutOfTime(Exception):
@@ -79,15 +82,21 @@ def tanh_sinh(near: tuple[Callable[[Number], Number], Callable[[Number], Number]
 
 def _outwards(term: Callable[[Number], Number], step: Number, tolerance: Number) -> tuple[Number, Number]:
     """Sum of the terms at step, 2*step, ... until they are negligible, and where that happened."""
-    total, small, k = mp.zero, 0, 1
-    last = None
+    total, small, growing, k = mp.zero, 0, 0, 1
+    last: Number = None
     while small < 3 or abs(k * step) < _SMALLEST_T:
         t = k * step
         value = term(t)
         total += value
         small = small + 1 if abs(value) <= tolerance / 1000 else 0
         if abs(t) > _LARGEST_T:
-            raise Diverges if last and abs(value) >= abs(last) else SlowEnd
+            raise Diverges if abs(value) >= abs(last) else SlowEnd
+        if abs(t) > _CLEAR_T:
+            # without any decay the terms grow like cosh(t)
+            steady = abs(value) >= abs(last) * mp.cosh(t) / mp.cosh(t - step) * mp.mpf("0.99")
+            growing = growing + 1 if steady and value else 0
+            if growing == 3:
+                raise Diverges
         last, k = value, k + 1
     return total, abs(k * step)
 
@@ -121,7 +130,7 @@ def _fejer(count: int, precision: int) -> tuple[list[Number], list[Number], list
 
 def fejer(f: Callable[[Number], Number], a: Number, b: Number, tolerance: Number, count: int,
           depth: int = 14) -> Piece:
-    """Integral over (a, b) of a function that is smooth on [a, b]; halved where the series does not settle."""
+    """Integral over (a, b) of a function smooth on [a, b]; halved where the series does not settle."""
     nodes, weights, rows = _fejer(count, mp.prec)
     middle, half = (a + b) / 2, (b - a) / 2
     values = [f(middle + half * node) for node in nodes]

@@ -2,7 +2,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator, Mapping
-from itertools import combinations
+from itertools import combinations, pairwise
 from typing import Any
 
 from mpmath import mp
@@ -104,7 +104,7 @@ def _zeros(suspect: Expr, x: Symbol, point: Mapping[Symbol, Any], low: Number, h
                 signs.append((t, value(t)))
             except NUMERIC_ERRORS:
                 continue
-    for (t, ft), (u, fu) in zip(signs, signs[1:], strict=False):
+    for (t, ft), (u, fu) in pairwise(signs):
         if ft == 0 or ft * fu < 0:
             with mp.workdps(MARK_DIGITS):
                 try:

@@ -2,10 +2,27 @@
 from __future__ import annotations
 
 from mpmath import mp
-from sympy import Abs, Add, Expr, Heaviside, Max, Min, Piecewise, Symbol, arg, conjugate, im, re, sign
+from sympy import (
+    Abs,
+    Add,
+    Expr,
+    Heaviside,
+    Max,
+    Min,
+    Piecewise,
+    Symbol,
+    arg,
+    conjugate,
+    hankel1,
+    hankel2,
+    im,
+    re,
+    sign,
+)
 
-from .functions import Number
+from .functions import Number, asymptotic_from
 from .integrand import Integrand
+from .numeric import evaluate
 from .phases import Phase, Phases, one_phase_each
 from .rules import Piece, fejer
 
@@ -31,9 +48,9 @@ def windowed(g: Integrand, start: Number, r: float, omegas: list[float], digits:
              tolerance: Number, count: int) -> Piece:
     """Integral of g over (start, oo) of a purely oscillating tail.
 
-    With v = x**r the integrand is multiplied by erfc((v - centre)/width)/2. The part so removed is the integral
-    of exp(i*omega*v) times a slowly varying amplitude and the complementary window, whose transform is below
-    exp(-(omega*width)**2/4): moving the path by omega*width**2/2 shows it, so `centre` must exceed that distance.
+    With v = x**r the integrand is multiplied by erfc((v - centre)/width)/2. The part so removed is the
+    integral of exp(i*omega*v) times a slowly varying amplitude and the complementary window, and it is below
+    exp(-(omega*width)**2/4): the path moved by omega*width**2/2 shows it, so `centre` must exceed that.
     """
     slow, fast = mp.mpf(omegas[0]), mp.mpf(omegas[-1])
     width = 2 * mp.sqrt((digits + 4) * mp.log(10)) / slow * shift
@@ -64,7 +81,9 @@ def split_by_phase(g: Integrand, r: float) -> tuple[Expr, Expr, Expr] | None:
     x: Symbol = g.variable
     if g.expr.has(*_NOT_ANALYTIC):
         return None
-    up, down, slow = [], [], []
+    up: list[Expr] = []
+    down: list[Expr] = []
+    slow: list[Expr] = []
     for term in Add.make_args(one_phase_each(g.expr)):
         reader = Phases(x, g.point)
         found = reader.of(term)
@@ -76,6 +95,19 @@ def split_by_phase(g: Integrand, r: float) -> tuple[Expr, Expr, Expr] | None:
         else:
             (up if phase[0][1] > 0 else down).append(term)
     return Add(*up), Add(*down), Add(*slow)
+
+
+def expansions_hold(parts: tuple[Expr, ...], g: Integrand) -> Number:
+    """From where on the Hankel functions of the parts have their expansions, which alone are fast."""
+    reader = Phases(g.variable, g.point)
+    start = mp.zero
+    for part in parts:
+        for node in sorted(part.atoms(hankel1, hankel2), key=str):
+            found = reader.growth(node.args[1])
+            if found is not None:
+                least = asymptotic_from(evaluate(node.args[0], g.point))
+                start = max(start, (least / abs(found[0])) ** (1 / mp.mpf(found[1])))
+    return start
 
 
 def rotated(g: Integrand, side: int, start: Number, r: float, omegas: list[float], tolerance: Number,
