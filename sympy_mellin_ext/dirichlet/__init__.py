@@ -1,4 +1,5 @@
-"""Series of exponentials and the Dirichlet series that are their transforms: zeta, eta, Hurwitz, Lerch, polylog."""
+"""Series of exponentials and their transforms: zeta, eta, Hurwitz, Lerch, polylogarithm."""
+
 from .combination import Combination, Row
 from .functions import NoClosedForm
 

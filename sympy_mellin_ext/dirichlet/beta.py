@@ -2,6 +2,7 @@
 
 Sources: DLMF 5.12.1, 5.12.3; I. S. Gradshteyn and I. M. Ryzhik, 3.312.1, 3.512 (from memory).
 """
+
 from __future__ import annotations
 
 from collections.abc import Sequence
@@ -37,7 +38,7 @@ def is_finite(draft: Draft, ratio: Expr) -> bool:
 def closed_form_of_beta(
     problem: Problem, expansions: Sequence[Expansion], plain: Sequence[Draft], name: str
 ) -> ClosedForm | None:
-    """The closed form of powers of one binomial times exponentials and whole powers of y, and of `plain` ones."""
+    """Powers of one binomial times exponentials and whole powers of y, besides `plain` exponentials."""
     condition: Boolean = S.true
     items: list[tuple[BetaFactor, int, Expr]] = []
     ratio = expansions[0].ratio
@@ -52,7 +53,11 @@ def closed_form_of_beta(
         raise Unsupported("different binomials")
     first = items[0][0]
     if first.z is S.One:
-        terms = [_in_q(b, k) for b, k, _ in items] if first.other is S.Zero else [_in_tanh(b, k) for b, k, _ in items]
+        terms = (
+            [_in_q(b, k) for b, k, _ in items]
+            if first.other is S.Zero
+            else [_in_tanh(b, k) for b, k, _ in items]
+        )
         if any((b.other is S.Zero) != (first.other is S.Zero) for b, _, _ in items):
             raise Unsupported("different binomials")
         if rest and first.other is not S.Zero:
@@ -127,10 +132,14 @@ def _mirrored(items: Sequence[tuple[BetaFactor, int, Expr]], condition: Boolean)
         else:
             for other in pending:
                 o = other[0]
-                if other[1] == k and o.power == b.power and (o.rate - mirror).expand() is S.Zero:
-                    if (o.coefficient - S.NegativeOne**k * b.coefficient).expand() is S.Zero:
-                        pending.remove(other)
-                        break
+                if (
+                    other[1] == k
+                    and o.power == b.power
+                    and (o.rate - mirror).expand() is S.Zero
+                    and (o.coefficient - S.NegativeOne**k * b.coefficient).expand() is S.Zero
+                ):
+                    pending.remove(other)
+                    break
             else:
                 raise Unsupported("a power of 1 + q without its mirror image")
         product: GammaProduct = binomial_power(m)

@@ -1,4 +1,5 @@
 """Sums of exponentials as products of binomials: ``c0*exp(e0*y) * prod (1 - z*exp(-d*y))**n`` with d > 0."""
+
 from __future__ import annotations
 
 from collections.abc import Sequence

@@ -1,26 +1,29 @@
 """Linear combinations of Dirichlet series as one factor of a Mellin transform."""
+
 from __future__ import annotations
 
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
 from functools import cached_property
-from typing import NamedTuple
 
-from sympy import Add, Catalan, Expr, I, Integer, Mul, Pow, Rational, S, cos, digamma, dirichlet_eta, exp, factorial, ilcm, log, pi, sin, zeta
+from sympy import (
+    Add,
+    Expr,
+    Integer,
+    Mul,
+    Pow,
+    Rational,
+    S,
+    dirichlet_eta,
+    ilcm,
+    log,
+    zeta,
+)
 
 from ..gamma.laurent import Series, multiply, power_series
 from . import functions
 from .periodic import Periodic, periodic
-
-
-class Row(NamedTuple):
-    """``coefficient * step**(-w) * Phi(z, w, a)`` at ``w = u - shift``."""
-
-    z: Expr
-    shift: Integer
-    step: Rational
-    a: Expr
-    coefficient: Expr
+from .reflection import Row, derivative_at_zero, inverted, reflected
 
 
 @dataclass(frozen=True)
@@ -32,7 +35,7 @@ class Combination:
     >>> from sympy import S, symbols
     >>> u = symbols('u')
     >>> Combination((Row(S.One, S.Zero, S(2), S.Half, S.One),)).at(u)
-    (1 - 2**(-u))*zeta(u)
+    (1 - 1/2**u)*zeta(u)
     """
 
     rows: tuple[Row, ...]
@@ -64,8 +67,15 @@ class Combination:
 class _Level:
     """The rows of one shift, brought to as few functions as possible."""
 
-    def __init__(self, unit: Periodic, hurwitz: Sequence[Row], alternating: Sequence[Row], lerch: Sequence[Row]) -> None:
-        self.unit, self.hurwitz, self.alternating, self.lerch = unit, tuple(hurwitz), tuple(alternating), tuple(lerch)
+    def __init__(
+        self, unit: Periodic, hurwitz: Sequence[Row], alternating: Sequence[Row], lerch: Sequence[Row]
+    ) -> None:
+        self.unit, self.hurwitz, self.alternating, self.lerch = (
+            unit,
+            tuple(hurwitz),
+            tuple(alternating),
+            tuple(lerch),
+        )
 
     @classmethod
     def of(cls, rows: Sequence[Row]) -> _Level:
@@ -113,8 +123,12 @@ class _Level:
             return self._finite_part_at_one()
         if w.is_Integer and w.is_positive:
             return self._at_integer(int(w))
-        terms = [(step, c, functions.value(S.One, w, a)) for step, a, c in self._at_steps[len(self.unit.zeta) :]]
-        terms += [(r.step, r.coefficient, functions.value(r.z, w, r.a)) for r in self.alternating + self.lerch]
+        terms = [
+            (step, c, functions.value(S.One, w, a)) for step, a, c in self._at_steps[len(self.unit.zeta) :]
+        ]
+        terms += [
+            (r.step, r.coefficient, functions.value(r.z, w, r.a)) for r in self.alternating + self.lerch
+        ]
         total = _common_step(terms, w)
         unit = [
             _weighted(weights, w, function)
@@ -130,29 +144,29 @@ class _Level:
         terms += [c * d ** (-n) * dirichlet_eta(n) for d, c in self.unit.eta.items()]
         pairs = [(step, a, c) for (step, a), c in self.unit.hurwitz.items()]
         pairs += [(r.step, r.a, r.coefficient) for r in self.hurwitz]
-        terms += _reflected(S.One, w, pairs)
-        terms += _reflected(S.NegativeOne, w, [(r.step, r.a, r.coefficient) for r in self.alternating])
-        terms += _inverted(w, self.lerch)
+        terms += reflected(S.One, w, pairs)
+        terms += reflected(S.NegativeOne, w, [(r.step, r.a, r.coefficient) for r in self.alternating])
+        terms += inverted(w, self.lerch)
         return Add(*terms)
 
     def _finite_part_at_one(self) -> Expr:
-        """At w = 1, less the pole ``residue/(w - 1)``: DLMF 25.2.4 and 25.11.29-type, zeta(w, a) = 1/(w-1) - psi(a) + ..."""
+        """At w = 1, less the pole ``residue/(w - 1)``: zeta(w, a) = 1/(w-1) - psi(a) + ..., DLMF 25.2.4."""
         terms = [-c / step * log(step) for step, _, c in self._at_steps]
         terms += [c / d * dirichlet_eta(S.One) for d, c in self.unit.eta.items()]
-        terms += _reflected(S.One, 1, self._at_steps)
-        terms += _reflected(S.NegativeOne, 1, [(r.step, r.a, r.coefficient) for r in self.alternating])
-        terms += _inverted(1, self.lerch)
+        terms += reflected(S.One, 1, self._at_steps)
+        terms += reflected(S.NegativeOne, 1, [(r.step, r.a, r.coefficient) for r in self.alternating])
+        terms += inverted(1, self.lerch)
         return Add(*terms)
 
     def _vanishing_part(self, w: Expr, rate: Expr, terms: int) -> Series | None:
-        """The two first coefficients of the periodic part at a negative whole w where parity makes it vanish."""
+        """Two coefficients of the periodic part at a negative whole w where parity makes it vanish."""
         if terms != 2 or not (w.is_Integer and w.is_negative) or not self.unit.hurwitz:
             return None
         total: Expr = S.Zero
         for step in sorted({step for step, _ in self.unit.hurwitz}):
             part = {a: c for (d, a), c in self.unit.hurwitz.items() if d == step}
             period = ilcm(*(a.q for a in part)) if len(part) > 1 else next(iter(part)).q
-            slope = _derivative_at_zero({int(a * period): c for a, c in part.items()}, int(period), -int(w))
+            slope = derivative_at_zero({int(a * period): c for a, c in part.items()}, int(period), -int(w))
             if slope is None:
                 return None
             total += step ** (-w) * slope
@@ -179,7 +193,8 @@ class _Level:
         if at_pole and first == 0 and parts:
             total = Series(0, tuple(total.coefficient(k) for k in range(terms)))
         others = [
-            _stepped(functions.eta_series(w, rate, terms), d, w, rate, terms).times(c) for d, c in self.unit.eta.items()
+            _stepped(functions.eta_series(w, rate, terms), d, w, rate, terms).times(c)
+            for d, c in self.unit.eta.items()
         ]
         others += [
             _stepped(functions.series(r.z, w, rate, r.a, terms), r.step, w, rate, terms).times(r.coefficient)
@@ -193,27 +208,6 @@ class _Level:
             coefficients[place] = self._finite_part_at_one()
             result = Series(first, tuple(coefficients))
         return result
-
-
-def _derivative_at_zero(coefficients: dict[int, Expr], period: int, m: int) -> Expr | None:
-    """Derivative at ``w = -m`` of ``sum c(r)*zeta(w, r/N)`` where parity makes the value vanish, m > 0.
-
-    From Hurwitz' formula, DLMF 25.11.9, with ``sum_n sin(2*pi*n*r/N)/n**k`` as Hurwitz zeta functions at k.
-    None where c is neither odd (m odd) nor even (m even) under r -> N - r.
-    """
-    parity = S.NegativeOne**m
-    for r, c in coefficients.items():
-        mirror = coefficients.get(period - r, S.Zero) if r != period else c
-        if (mirror - parity * c).expand() is not S.Zero or (r == period and m % 2):
-            return None
-    wave = sin if m % 2 else cos
-    k = Integer(m + 1)
-    items = [
-        (Integer(period), Rational(j, period), Add(*(c * wave(2 * pi * j * r / period) for r, c in coefficients.items())))
-        for j in range(1, period + 1)
-    ]
-    total = Add(*_reflected(S.One, int(k), [(step, a, c) for step, a, c in items if c is not S.Zero]))
-    return factorial(m) * S.NegativeOne ** (m // 2) * total / (2 * (2 * pi) ** m)
 
 
 def _weighted(weights: dict[Rational, Expr], w: Expr, function: Expr) -> Expr:
@@ -267,7 +261,7 @@ def _merged(rows: Iterable[Row]) -> list[Row]:
 
 
 def _halved(rows: list[Row]) -> list[Row]:
-    """``Phi(1, w, a) + Phi(-1, w, a)`` is twice its even half, a Hurwitz zeta function at a/2; likewise the odd half."""
+    """``Phi(1, w, a) + Phi(-1, w, a)`` is twice its even half, a zeta function at a/2; likewise the odd."""
     by_place = {(r.z, r.step, r.a): r for r in rows if r.z in (S.One, S.NegativeOne)}
     result: list[Row] = []
     used: set[Row] = set()
@@ -285,95 +279,6 @@ def _halved(rows: list[Row]) -> list[Row]:
         # the row keeps (2*step)**(-w): its coefficient is for w = u - shift already
         result.append(Row(S.One, r.shift, 2 * r.step, start.expand(), 2 * plain.coefficient))
     return result
-
-
-# -- reflection ----------------------------------------------------------------------------------------------
-
-
-def _reflected(z: Expr, w: int, items: Sequence[tuple[Rational, Expr, Expr]]) -> list[Expr]:
-    """``sum c*step**(-w)*Phi(z, w, a)`` for z = +1 or -1, pairs with ``a + a'`` whole by the reflection formula.
-
-    At z = w = 1 the finite part ``-psi(a)`` stands for Phi.
-    """
-    terms: list[Expr] = []
-    rest = list(items)
-    parity = S.NegativeOne**w * (1 if z is S.One else -1)
-    while rest:
-        step, a, c = rest.pop(0)
-        for other in rest:
-            if other[0] != step:
-                continue
-            n = (a + other[1]).expand()
-            if not n.is_Integer:
-                continue
-            factor, shift = functions.shifted(z, Integer(w), (1 - a).expand(), int(n) - 1)
-            if (other[2] * factor - parity * c).expand() is not S.Zero or a == other[1]:
-                continue
-            two_sided = functions.two_sided if z is S.One else functions.two_sided_alternating
-            rest.remove(other)
-            terms.append(step ** Integer(-w) * (c * two_sided(w, a) + other[2] * shift))
-            break
-        else:
-            terms.append(c * step ** Integer(-w) * _single(z, w, a))
-    return terms
-
-
-def _single(z: Expr, w: int, a: Expr) -> Expr:
-    if z is S.NegativeOne:
-        return functions.alternating(Integer(w), a)
-    if w == 1:
-        return -digamma(a).expand(func=True) if a.is_Rational else -digamma(a)
-    if w == 2 and a.is_Rational and a.q == 4 and 0 < a < 1:
-        # DLMF 25.11.40-type: Catalan's constant is (zeta(2, 1/4) - zeta(2, 3/4))/16
-        return pi**2 + (8 if a.p == 1 else -8) * Catalan
-    return zeta(Integer(w), a)
-
-
-def _inverted(w: int, rows: Sequence[Row]) -> list[Expr]:
-    """General z; pairs of polylogarithms at z and 1/z by Jonquiere's inversion."""
-    terms: list[Expr] = []
-    rest = list(rows)
-    while rest:
-        row = rest.pop(0)
-        logarithm = _log_of_minus(row.z)
-        if row.a is S.One and logarithm is not None:
-            for other in rest:
-                if other.a is not S.One or other.step != row.step or (other.z * row.z).expand() != 1:
-                    continue
-                weights = (row.coefficient / row.z, other.coefficient / other.z)
-                if (weights[1] - S.NegativeOne**w * weights[0]).expand() is not S.Zero:
-                    continue
-                rest.remove(other)
-                terms.append(weights[0] * row.step ** Integer(-w) * functions.inversion(w, row.z, logarithm))
-                break
-            else:
-                terms.append(_plain(row, w))
-            continue
-        terms.append(_plain(row, w))
-    return terms
-
-
-def _plain(row: Row, w: int) -> Expr:
-    return Mul(row.coefficient, row.step ** Integer(-w), functions.value(row.z, Integer(w), row.a))
-
-
-def _log_of_minus(z: Expr) -> Expr | None:
-    """``log(-z)`` for ``z = -exp(v)`` with v real or imaginary, or ``z = exp(I*t)``.
-
-    The phases are below pi and between 0 and 2*pi: nothing else passes as a root off the half line.
-    """
-    other = -z
-    if isinstance(other, exp):
-        v = other.args[0]
-        if v.is_extended_real or (v / I).is_extended_real:
-            return v
-    elif isinstance(z, exp):
-        t = z.args[0] / I
-        if t.is_extended_real:
-            return I * (t + pi if t.could_extract_minus_sign() else t - pi)
-    elif other.is_positive:
-        return log(other)
-    return None
 
 
 __all__ = ["Combination", "Row"]

@@ -1,4 +1,4 @@
-"""From products of binomials in exponentials to rows of Dirichlet series, finite exponential sums and Beta terms.
+"""From products of binomials in exponentials to Dirichlet series, finite sums and Beta integrals.
 
 ``exp(-A*y)*(1 - z*q)**(-n)`` with ``q = exp(-d*y)`` is ``sum_k binomial(n+k-1, k)*z**k*exp(-d*(k + a)*y)``,
 ``a = A/d``; the binomial is a polynomial in ``t = k + a``, so that the transform is Gamma(u)*d**(-u) times
@@ -6,30 +6,27 @@ combinations of ``Phi(z, u - j, a)``.  ``log(1 - z*q)`` is ``-sum_k z**k/k*q**k`
 
 Sources: DLMF 4.6.1 and 4.6.7 (series), 25.5.1, 25.11.25 and 25.14.5 (transforms).
 """
+
 from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass, field
 
-from sympy import Add, Expr, I, Integer, Ne, Pow, S, binomial, exp, factorial, ilcm, log, sin
+from sympy import Add, Expr, Integer, Pow, S, binomial, factorial, log
 from sympy.logic.boolalg import And, Boolean
 
 from ..matching.waves import Draft
 from ..region import Facts, real_part
 from .binomials import binomials, commensurable
+from .fractions import MOST_TERMS, Unsupported, separated
 from .reader import SeriesFactor, as_exponentials, times
 
-_MOST_TERMS = 400
 _MOST_PEELED = 40
-
-
-class Unsupported(Exception):
-    """The product has no single Dirichlet series in the table."""
 
 
 @dataclass(frozen=True)
 class Ray:
-    """``coefficient * sum_k z**k * (k + a)**shift * exp(-d*(k + a)*y)``, before rays of one unit are gathered."""
+    """``coefficient * sum_k z**k * (k + a)**shift * exp(-d*(k + a)*y)``."""
 
     d: Expr
     z: Expr
@@ -40,7 +37,7 @@ class Ray:
 
 @dataclass(frozen=True)
 class BetaFactor:
-    """``coefficient * exp(-rate*y) * (1 - z*q)**power * log(1 - q)**logs * (1 + q)**other``, ``q = exp(-d*y)``."""
+    """``coefficient * exp(-rate*y)*(1 - z*q)**power*log(1 - q)**logs*(1 + q)**other``, ``q = exp(-d*y)``."""
 
     coefficient: Expr
     rate: Expr
@@ -117,21 +114,25 @@ def _take(
     split = binomials(factor.base, facts)
     if split is None:
         raise Unsupported("roots of a sum of exponentials")
-    if factor.positive:
-        # no root lies on the half line, so that the sign at oo is the sign throughout
-        if facts.sign(split.front) != 1:
-            raise Unsupported("a power of a base that may be negative")
+    # no root lies on the half line, so that the sign at oo is the sign throughout
+    if factor.positive and facts.sign(split.front) != 1:
+        raise Unsupported("a power of a base that may be negative")
     result.condition = And(result.condition, split.condition)
     n = factor.power
     found = [(z, d, m * n) for z, d, m in split.factors]
     return Pow(split.front, n), (rate - n * split.growth).expand(), found
 
 
-# -- products --------------------------------------------------------------------------------------------------
+# -- products ----------------------------------------------------------------------------------------
 
 
 def _product(
-    result: Expansion, coefficient: Expr, rate: Expr, factors: dict[tuple[Expr, Expr], Expr], trig: Draft, facts: Facts
+    result: Expansion,
+    coefficient: Expr,
+    rate: Expr,
+    factors: dict[tuple[Expr, Expr], Expr],
+    trig: Draft,
+    facts: Facts,
 ) -> None:
     if any(not n.is_Integer for n in factors.values()):
         _beta_power(result, coefficient, rate, factors, trig)
@@ -144,7 +145,10 @@ def _product(
         else:
             top = _multiplied(top, z, d, int(n))
     if len(below) > 1:
-        for weight, numerator, (z, d), n in _separated(below, result):
+        distinct: list[Boolean] = []
+        parts = separated(below, distinct)
+        result.condition = And(result.condition, *distinct)
+        for weight, numerator, (z, d), n in parts:
             both = {e + f: S.Zero for e in top for f in numerator}
             for e, c in top.items():
                 for f, w in numerator.items():
@@ -163,103 +167,9 @@ def _product(
 def _multiplied(top: dict[Expr, Expr], z: Expr, d: Expr, n: int) -> dict[Expr, Expr]:
     for _ in range(n):
         top = times(top, {S.Zero: S.One, d: -z})
-        if len(top) > _MOST_TERMS:
+        if len(top) > MOST_TERMS:
             raise Unsupported("too many terms")
     return top
-
-
-def _separated(
-    below: dict[tuple[Expr, Expr], int], result: Expansion
-) -> list[tuple[Expr, dict[Expr, Expr], tuple[Expr, Expr], int]]:
-    """Several binomials below the line as (weight, numerator, binomial, power) with one binomial each."""
-    if all(z in (S.One, S.NegativeOne) for z, _ in below):
-        return [(S.One, *_over_one_binomial(below))]
-    (first, *others) = below
-    if any(d != first[1] for _, d in others):
-        raise Unsupported("incommensurable roots")
-    parts: list[tuple[Expr, dict[Expr, Expr], tuple[Expr, Expr], int]] = []
-    pending: list[tuple[Expr, dict[Expr, int]]] = [(S.One, {z: n for (z, _), n in below.items()})]
-    while pending:
-        weight, powers = pending.pop()
-        if len(powers) == 1:
-            ((z, n),) = powers.items()
-            parts.append((weight, {S.Zero: S.One}, (z, first[1]), n))
-            continue
-        if len(pending) + len(parts) > _MOST_TERMS:
-            raise Unsupported("too many partial fractions")
-        # 1/((1-u*q)*(1-v*q)) = (u/(1-u*q) - v/(1-v*q))/(u - v)
-        u, v = list(powers)[:2]
-        gap, conjugate = _gap(u, v)
-        # conjugate phases meet at z = -1 only, where the value is continuous
-        if not conjugate and not gap.is_nonzero and not (gap.is_number and not gap.equals(0)):
-            result.condition = And(result.condition, Ne(u, v))
-        for keep, drop, sign in ((u, v, 1), (v, u, -1)):
-            left = dict(powers)
-            left[drop] -= 1
-            if not left[drop]:
-                del left[drop]
-            pending.append((weight * sign * keep / gap, left))
-    return parts
-
-
-def _gap(u: Expr, v: Expr) -> tuple[Expr, bool]:
-    """``u - v``; a difference of conjugate phases as a sine, and whether it is one."""
-    for sign in (1, -1):
-        if isinstance(sign * u, exp) and isinstance(sign * v, exp):
-            angle = (sign * u).args[0] / I
-            if (sign * v).args[0] == -(sign * u).args[0] and angle.is_extended_real:
-                return sign * 2 * I * sin(angle), True
-    return u - v, False
-
-
-def _over_one_binomial(below: dict[tuple[Expr, Expr], int]) -> tuple[dict[Expr, Expr], tuple[Expr, Expr], int]:
-    """Factors ``1 +- q**m`` over one ``(1 - q**M)**n``: ``1/(1 - p) = (1 + p + ...)/(1 - p**k)``."""
-    unit = next(iter(below))[1]
-    ratios = []
-    for _, d in below:
-        r = commensurable(d, unit)
-        if r is None:
-            raise Unsupported("incommensurable exponentials")
-        ratios.append(r)
-    whole = ilcm(*(r.q for r in ratios))
-    degrees = [int(r * whole) for r in ratios]
-    step = unit / whole
-    big = ilcm(*(m * (1 if z is S.One else 2) for (z, _), m in zip(below, degrees, strict=True)))
-    numerator: dict[int, int] = {0: 1}
-    total = 0
-    for ((z, _), n), m in zip(below.items(), degrees, strict=True):
-        total += n
-        # 1/(1 - z*p) = sum_{k < K} (z*p)**k / (1 - (z*p)**K)
-        series = {m * k: (1 if z is S.One else (-1) ** k) for k in range(int(big) // m)}
-        for _ in range(n):
-            product: dict[int, int] = {}
-            for e, c in numerator.items():
-                for f, w in series.items():
-                    product[e + f] = product.get(e + f, 0) + c * w
-            numerator = {e: c for e, c in product.items() if c}
-            if len(numerator) > _MOST_TERMS:
-                raise Unsupported("too many terms")
-    # cancel what numerator and denominator share
-    while total > 1 and (reduced := _divided(numerator, int(big))) is not None:
-        numerator, total = reduced, total - 1
-    return {step * e: Integer(c) for e, c in sorted(numerator.items())}, (S.One, step * big), total
-
-
-def _divided(numerator: dict[int, int], m: int) -> dict[int, int] | None:
-    """The numerator over ``1 - p**m``, if the division leaves no rest."""
-    rest, quotient = dict(numerator), {}
-    top = max(rest)
-    for e in range(top + 1):
-        c = rest.pop(e, 0)
-        if not c:
-            continue
-        if e + m > top:
-            return None
-        quotient[e] = c
-        rest[e + m] = rest.get(e + m, 0) + c
-        if not rest[e + m]:
-            del rest[e + m]
-    return quotient
 
 
 def _exponential(coefficient: Expr, rate: Expr, ratio: Expr) -> Draft:
@@ -346,7 +256,7 @@ def _decays(result: Expansion, rate: Expr, facts: Facts) -> None:
         result.condition = And(result.condition, real > 0)
 
 
-# -- logarithms ------------------------------------------------------------------------------------------------
+# -- logarithms --------------------------------------------------------------------------------------
 
 
 def _logarithm(
@@ -402,7 +312,7 @@ def _beta_logarithms(
     result.beta.append(BetaFactor(coefficient, rate, S.One, d, power, len(logarithms)))
 
 
-# -- other powers ----------------------------------------------------------------------------------------------
+# -- other powers ------------------------------------------------------------------------------------
 
 
 def _beta_power(

@@ -1,4 +1,5 @@
 """Short forms of values of exponential series."""
+
 from __future__ import annotations
 
 from sympy import (
@@ -63,7 +64,7 @@ def shortest(value: Expr) -> Expr:
 
 
 def _reflected(total: Expr) -> Expr:
-    """``log Gamma(a) + log Gamma(1-a)`` for rational a, and for conjugate a with real part 1/2 or 1: DLMF 5.4.3-4, 5.5.3."""
+    """``log Gamma(a) + log Gamma(1-a)``, a rational or with real part 1/2 (or 1): DLMF 5.4.3-4, 5.5.3."""
     weights: dict[Expr, Expr] = {}
     rest: list[Expr] = []
     for term in Add.make_args(total):
@@ -108,7 +109,7 @@ def _mirrors(a: Expr, b: Expr) -> bool:
 
 
 def _first_stieltjes(total: Expr) -> Expr:
-    """``gamma_1(m/n) - gamma_1(1 - m/n)``, Malmsten (1842); I. V. Blagouchine, J. Number Theory 148 (2015)."""
+    """``gamma_1(m/n) - gamma_1(1 - m/n)``: I. V. Blagouchine, J. Number Theory 148 (2015), eq. (37)-type."""
     weights: dict[Expr, Expr] = {}
     rest: list[Expr] = []
     for term in Add.make_args(total):
@@ -157,7 +158,9 @@ def _conjugates_joined(total: Expr) -> Expr:
 
 def _complex_trigonometric(factor: Expr) -> bool:
     node = factor.base if factor.is_Pow and factor.exp is S.NegativeOne else factor
-    if factor.is_Pow and not isinstance(node, (sin, cos)) or not factor.is_Pow and not isinstance(node, (tan, cot)):
+    if (factor.is_Pow and not isinstance(node, (sin, cos))) or (
+        not factor.is_Pow and not isinstance(node, (tan, cot))
+    ):
         return False
     return node.args[0].has(I)
 

@@ -3,19 +3,16 @@
 Sources: DLMF 25.11.1, 25.11.9 and 25.11.14-18 (Hurwitz), 25.14.1 (Lerch), 25.12.10 (polylogarithm),
 25.2.4 and 25.6.11-15 (Laurent series and derivatives of zeta).
 """
+
 from __future__ import annotations
 
 from sympy import (
     Derivative,
     Expr,
-    I,
     Integer,
     Pow,
-    Rational,
     S,
     Symbol,
-    bernoulli,
-    cot,
     digamma,
     dirichlet_eta,
     factorial,
@@ -24,7 +21,6 @@ from sympy import (
     loggamma,
     pi,
     polylog,
-    sin,
     stieltjes,
     zeta,
 )
@@ -85,7 +81,9 @@ def _rational(z: Expr, n: int, a: Expr) -> Expr:
 def hurwitz_series(w: Expr, rate: Expr, a: Expr, terms: int) -> Series:
     """``zeta(w + rate*eps, a)``; at the pole w = 1 it starts with ``1/(rate*eps)``."""
     if w is S.One:
-        rest = [S.NegativeOne**n * _stieltjes(n, a) * rate ** (n + 1) / factorial(n) for n in range(terms - 1)]
+        rest = [
+            S.NegativeOne**n * _stieltjes(n, a) * rate ** (n + 1) / factorial(n) for n in range(terms - 1)
+        ]
         return Series(-1, (S.One, *rest)[:terms], 1 / rate)
     return Series(0, tuple(_derivative(n, w, a) * rate**n / factorial(n) for n in range(terms)))
 
@@ -123,7 +121,7 @@ def _derivative(n: int, w: Expr, a: Expr) -> Expr:
 
 
 def _symbolic(function: object, n: int, w: Expr) -> Expr:
-    """The derivative at a linear expression ``shift + slope*s`` of one symbol, as a derivative in that symbol."""
+    """The derivative at ``shift + slope*s``, as a derivative in the symbol s."""
     symbols = sorted(w.free_symbols, key=str)
     for s in symbols:
         slope = w.diff(s)
@@ -173,56 +171,6 @@ def series(z: Expr, w: Expr, rate: Expr, a: Expr, terms: int) -> Series:
     return Series(0, (head, *rest))
 
 
-# -- reflection at whole w -----------------------------------------------------------------------------------
-
-
-def two_sided(w: int, a: Expr) -> Expr:
-    """``zeta(w, a) + (-1)**w*zeta(w, 1 - a)``, the sum of ``(n + a)**(-w)`` over all n: DLMF 4.22.3 and its derivatives."""
-    argument = (pi * a).expand()
-    # in t = 1/sin(pi*a)**2: an even derivative of the cotangent is cot*p(t), an odd one p(t)
-    p, with_cotangent = [S.One], True
-    for _ in range(w - 1):
-        p, with_cotangent = _differentiated(p, with_cotangent), not with_cotangent
-    sine = sin(argument)
-    total = sum((c * sine ** (-2 * k) for k, c in enumerate(p)), S.Zero)
-    if with_cotangent:
-        total = total * cot(argument)
-    return pi**w * S.NegativeOne ** (w - 1) / factorial(w - 1) * total
-
-
-def _differentiated(p: list[Expr], with_cotangent: bool) -> list[Expr]:
-    """Derivative of ``p(t)`` (over -cot) or of ``cot*p(t)``, t = 1/sin**2: t' = -2*t*cot, cot' = -t, cot**2 = t - 1."""
-    if not with_cotangent:
-        return [-2 * k * c for k, c in enumerate(p)]
-    result = [S.Zero] * (len(p) + 1)
-    for k, c in enumerate(p):
-        result[k + 1] += -c - 2 * k * c
-        result[k] += 2 * k * c
-    return result
-
-
-def two_sided_alternating(w: int, a: Expr) -> Expr:
-    """``Phi(-1, w, a) - (-1)**w*Phi(-1, w, 1 - a)``, the sum of ``(-1)**n*(n + a)**(-w)`` over all n: DLMF 4.22.5."""
-    argument = (pi * a).expand()
-    p, with_cotangent = [S.One], False  # p(t)/sin, or cot*p(t)/sin
-    for _ in range(w - 1):
-        result = [S.Zero] * (len(p) + 1)
-        for k, c in enumerate(p):
-            if with_cotangent:
-                # (cot*p/sin)' = (-(t - 1)*p - t*p - 2*t*(t - 1)*p')/sin
-                result[k + 1] += -2 * c - 2 * k * c
-                result[k] += c + 2 * k * c
-            else:
-                # (p/sin)' = cot*(-p - 2*t*p')/sin
-                result[k] += -c - 2 * k * c
-        p, with_cotangent = result, not with_cotangent
-    sine = sin(argument)
-    total = sum((c * sine ** (-2 * k - 1) for k, c in enumerate(p)), S.Zero)
-    if with_cotangent:
-        total = total * cot(argument)
-    return pi**w * S.NegativeOne ** (w - 1) / factorial(w - 1) * total
-
-
 def shifted(z: Expr, w: Expr, a: Expr, n: int) -> tuple[Expr, Expr]:
     """``Phi(z, w, a + n) = factor*Phi(z, w, a) + rest`` for whole n, as (factor, rest)."""
     factor = z ** (-n)
@@ -233,13 +181,4 @@ def shifted(z: Expr, w: Expr, a: Expr, n: int) -> tuple[Expr, Expr]:
     return factor, rest
 
 
-def inversion(w: int, z: Expr, logarithm: Expr) -> Expr:
-    """``polylog(w, z) + (-1)**w*polylog(w, 1/z)`` with ``logarithm = log(-z)``: Jonquiere, DLMF 25.12.14-type."""
-    x = Rational(1, 2) + logarithm / (2 * pi * I)
-    return (-((2 * pi * I) ** w) / factorial(w) * bernoulli(w, x)).expand()
-
-
-__all__ = [
-    "NoClosedForm", "alternating", "eta_series", "hurwitz_series", "inversion", "series", "shifted", "two_sided",
-    "two_sided_alternating", "value",
-]
+__all__ = ["NoClosedForm", "alternating", "eta_series", "hurwitz_series", "series", "shifted", "value"]

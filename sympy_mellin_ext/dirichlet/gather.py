@@ -1,4 +1,5 @@
 """Rays of one power of x become one factor of a transform, with arguments brought to common ones."""
+
 from __future__ import annotations
 
 from collections.abc import Sequence
@@ -50,9 +51,16 @@ def gather(expansions: Sequence[Expansion]) -> tuple[list[Piece], list[Draft]]:
             constant, kept = _common_front(kept)
             pieces.append(
                 Piece(
-                    constant, power, logs, EXP.with_scale(unit), ratio, None, (Combination(tuple(kept)),),
-                    conditions[power, logs, ratio], True,
-                )  # fmt: skip
+                    constant,
+                    power,
+                    logs,
+                    EXP.with_scale(unit),
+                    ratio,
+                    None,
+                    (Combination(tuple(kept)),),
+                    conditions[power, logs, ratio],
+                    True,
+                )
             )
     return pieces, plain
 
@@ -84,7 +92,8 @@ def _aligned(
             down = int(-((-a) // 1)) - 1
         else:
             down = max(
-                (int(n) for other in heads[z, shift, step] if (n := (a - other).expand()).is_Integer), default=0
+                (int(n) for other in heads[z, shift, step] if (n := (a - other).expand()).is_Integer),
+                default=0,
             )
         if not 0 <= down <= _MOST_SHIFTED:
             down = 0
@@ -104,7 +113,9 @@ def _common_front(rows: Sequence[Row]) -> tuple[Expr, list[Row]]:
     front = rows[0].coefficient
     if front.is_Rational and front.is_negative and len(rows) > 1:
         front = -front
-    quotients = [S.One if r.coefficient == front else -S.One if r.coefficient == -front else None for r in rows]
+    quotients = [
+        S.One if r.coefficient == front else -S.One if r.coefficient == -front else None for r in rows
+    ]
     if any(q is None for q in quotients):
         return S.One, list(rows)
     return front, [r._replace(coefficient=q) for r, q in zip(rows, quotients, strict=True) if q is not None]

@@ -6,6 +6,7 @@ With u = k + 1 and alpha = A/d,
 
 so that the integral is a combination of Dirichlet series at whole arguments.  Source: DLMF 4.6.1, 25.14.5.
 """
+
 from __future__ import annotations
 
 from collections.abc import Sequence

@@ -5,6 +5,7 @@ dirichlet_eta(w) where the polynomial carries the factor 1 - 2**(1-w).
 
 Sources: T. M. Apostol, Introduction to Analytic Number Theory (1976), ch. 12; DLMF 25.11.15, 27.5.3.
 """
+
 from __future__ import annotations
 
 from collections.abc import Sequence
@@ -19,7 +20,7 @@ _LONGEST_PERIOD = 240
 
 @dataclass
 class Periodic:
-    """The series as ``sum zeta_weights[d]*d**(-w)*zeta(w) + sum eta_weights[d]*d**(-w)*eta(w) + Hurwitz parts``.
+    """The series as ``sum zeta[d]*d**(-w)*zeta(w) + sum eta[d]*d**(-w)*eta(w)`` and Hurwitz parts.
 
     ``hurwitz`` maps (step, a) to c in ``c*step**(-w)*zeta(w, a)``.
     """
@@ -74,7 +75,9 @@ def _periodic(rows: Rows) -> Periodic | None:
     for first, step, c in progressions:
         for n in range(int(first / unit), period + 1, int(step / unit)):
             columns.setdefault(n, []).append(c)
-    coefficients = {n: total for n, column in sorted(columns.items()) if (total := _sum(column)) is not S.Zero}
+    coefficients = {
+        n: total for n, column in sorted(columns.items()) if (total := _sum(column)) is not S.Zero
+    }
     result = Periodic()
     if not coefficients:
         return result
@@ -95,7 +98,11 @@ def _periodic(rows: Rows) -> Periodic | None:
 
 def _unit(values: Sequence[Rational]) -> Rational:
     """The largest rational of which all are whole multiples."""
-    return Rational(gcd(*(int(v.p) for v in values)), lcm(*(int(v.q) for v in values))) if len(values) > 1 else values[0]
+    return (
+        Rational(gcd(*(int(v.p) for v in values)), lcm(*(int(v.q) for v in values)))
+        if len(values) > 1
+        else values[0]
+    )
 
 
 def _sum(column: Sequence[Expr]) -> Expr:

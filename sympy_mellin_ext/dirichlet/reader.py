@@ -1,4 +1,5 @@
 """The reader of the matcher, extended by powers and logarithms of sums of exponentials."""
+
 from __future__ import annotations
 
 from typing import NamedTuple
@@ -22,7 +23,7 @@ class Exponentials(NamedTuple):
 
 
 class SeriesFactor(NamedTuple):
-    """``base**power``, or ``log(base)`` if ``logarithm``; where ``positive``, it is right for a positive base only."""
+    """``base**power``, or ``log(base)`` if ``logarithm``; ``positive``: right for a positive base only."""
 
     base: Exponentials
     power: Expr
@@ -38,7 +39,7 @@ class Quotient(NamedTuple):
 
 
 def has_exponential_series(expr: Expr, x: Symbol) -> bool:
-    """Whether some exponential stands where only a series of exponentials helps: below the line, in a log, in tanh."""
+    """Whether an exponential stands where only a series helps: below the line, in a log, in tanh."""
     if expr.is_Atom or not expr.has_free(x):
         return False
     kind = type(expr)
@@ -48,9 +49,14 @@ def has_exponential_series(expr: Expr, x: Symbol) -> bool:
         return _contains_exponential(expr.args[0], x)
     if kind is Pow:
         base, exponent = expr.args
-        if not (exponent.is_Integer and exponent.is_positive) and not exponent.has_free(x):
-            if kind is not exp and type(base) is not exp and _contains_exponential(base, x):
-                return True
+        whole = exponent.is_Integer and exponent.is_positive
+        if (
+            not whole
+            and not exponent.has_free(x)
+            and type(base) is not exp
+            and _contains_exponential(base, x)
+        ):
+            return True
     return any(has_exponential_series(a, x) for a in expr.args)
 
 
@@ -73,7 +79,12 @@ class SeriesReader(Reader):
         if kind is Pow:
             base, exponent = expr.args
             whole = exponent.is_Integer and 0 < exponent <= _HIGHEST_EXPANDED
-            if not whole and not exponent.has_free(self.x) and type(base) is not exp and _contains_exponential(base, self.x):
+            if (
+                not whole
+                and not exponent.has_free(self.x)
+                and type(base) is not exp
+                and _contains_exponential(base, self.x)
+            ):
                 return self._power_of_sum(base, exponent)
         elif kind is log and _contains_exponential(expr.args[0], self.x):
             return self._logarithm_of_sum(expr.args[0])
@@ -110,7 +121,9 @@ class SeriesReader(Reader):
         quotient = self._quotient(inner)
         if quotient is None:
             return None
-        drafts = [Draft(coefficient=n, series=(SeriesFactor(b, S.One, True, True),)) for b, n in quotient.factors]
+        drafts = [
+            Draft(coefficient=n, series=(SeriesFactor(b, S.One, True, True),)) for b, n in quotient.factors
+        ]
         if quotient.power is not S.Zero:
             drafts.append(Draft(coefficient=quotient.power, logs=1))
         return drafts
@@ -119,7 +132,8 @@ class SeriesReader(Reader):
         """Powers of sums of exponentials and a power of x, if `base` is a product of such."""
         kind = type(base)
         if kind is Mul:
-            power, factors = S.Zero, []
+            power: Expr = S.Zero
+            factors: list[tuple[Exponentials, Expr]] = []
             for a in base.args:
                 part = self._quotient(a)
                 if part is None:
@@ -205,7 +219,9 @@ def as_exponentials(draft: Draft) -> list[Draft]:
     """The draft with sines and cosines of its series' power of x as complex exponentials."""
     if not draft.trig:
         return [draft]
-    parts = [Draft(draft.coefficient, draft.power, draft.logs, draft.exponents, (), draft.kernels, draft.series)]
+    parts = [
+        Draft(draft.coefficient, draft.power, draft.logs, draft.exponents, (), draft.kernels, draft.series)
+    ]
     for kind, c, ratio in draft.trig:
         weights = (1 / (2 * I), -1 / (2 * I)) if kind == "sin" else (S.Half, S.Half)
         parts = [
@@ -216,4 +232,12 @@ def as_exponentials(draft: Draft) -> list[Draft]:
     return parts
 
 
-__all__ = ["Exponentials", "SeriesFactor", "SeriesReader", "as_exponentials", "collected", "has_exponential_series", "times"]
+__all__ = [
+    "Exponentials",
+    "SeriesFactor",
+    "SeriesReader",
+    "as_exponentials",
+    "collected",
+    "has_exponential_series",
+    "times",
+]

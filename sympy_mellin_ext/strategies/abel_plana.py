@@ -1,12 +1,14 @@
 """Rational kernels times exponential series: Binet's and Hermite's formulas.
 
-``x/(x**2 + z**2)``, ``1/(x**2 + z**2)``, ``atan(x/z)`` and ``log(1 + x**2/z**2)`` are Laplace transforms of sines and
-cosines in x.  The inner integral over x is then a Fourier integral of an exponential series, the outer one a Laplace
-integral of hyperbolic functions.  The order of integration may be changed because the double integral converges
-absolutely: the series of exponentials keeps its sign at both ends and is integrable against x (or 1).
+``x/(x**2 + z**2)``, ``1/(x**2 + z**2)``, ``atan(x/z)`` and ``log(1 + x**2/z**2)`` are Laplace transforms of
+sines and cosines in x.  The inner integral over x is then a Fourier integral of an exponential series, the
+outer one a Laplace integral of hyperbolic functions.  The order of integration may be changed because the
+double integral converges absolutely: the series of exponentials keeps its sign at both ends and is
+integrable against x (or 1).
 
 Sources: DLMF 5.9.10-13 (Binet), 1.14.31-type (table of Laplace transforms), 25.11.29 (Hermite).
 """
+
 from __future__ import annotations
 
 from dataclasses import replace
@@ -25,7 +27,7 @@ _SINE, _COSINE, _ARC, _LOGARITHM = "sine", "cosine", "arc", "logarithm"
 
 
 class AbelPlana:
-    """``atan(x/z)/(exp(2*pi*x) - 1)``, ``x/((x**2 + z**2)*(exp(2*pi*x) - 1))``, ``1/((x**2 + z**2)*cosh(x))``."""
+    """``atan(x/z)/(exp(2*pi*x) - 1)``, ``1/((x**2 + z**2)*cosh(x))`` and their like."""
 
     name = "Abel-Plana kernel"
 
@@ -33,14 +35,13 @@ class AbelPlana:
         x = problem.variable
         if not problem.half_line or type(problem.integrand) is not Mul or problem.depth > 1:
             return None
-        for place, factor in enumerate(problem.integrand.args):
-            found = _kernel(factor, x, problem.facts)
-            if found is not None:
-                break
-        else:
+        rest = list(problem.integrand.args)
+        kernels = [(a, found) for a in rest if (found := _kernel(a, x, problem.facts)) is not None]
+        if not kernels:
             return None
-        kind, front, z = found
-        f = Mul(*(a for i, a in enumerate(problem.integrand.args) if i != place))
+        factor, (kind, front, z) = kernels[0]
+        rest.remove(factor)
+        f = Mul(*rest)
         if not has_exponential_series(f, x) or f.has(I, sin, cos):
             return None
         if kind == _COSINE and (f / x).has_free(x) and x in Mul.make_args(f):

@@ -1,12 +1,14 @@
 """Exponential series: rational functions of exponentials times powers, logarithms, sines and other pieces.
 
-``f = sum c_n*exp(-b_n*x)`` is integrated term by term: Gamma(s) times a Dirichlet series, where the series converges
-absolutely; beyond, by analytic continuation in s and in the fugacity up to the first singularity on the half line.
-The strip follows from the order of the total at x = 0.
+``f = sum c_n*exp(-b_n*x)`` is integrated term by term: Gamma(s) times a Dirichlet series, where the series
+converges absolutely; beyond, by analytic continuation in s and in the fugacity, up to the first singularity
+on the half line.  The strip follows from the order of the total at x = 0.
 
-Sources: DLMF 25.5.1-6, 25.11.25-27, 25.12.11-15, 25.14.5; D. Zagier, The Mellin transform and related analytic
-techniques (2006), section 1; P. Flajolet, X. Gourdon, P. Dumas, Mellin transforms and asymptotics (1995).
+Sources: DLMF 25.5.1-6, 25.11.25-27, 25.12.11-15, 25.14.5; D. Zagier, The Mellin transform and related
+analytic techniques (2006), section 1; P. Flajolet, X. Gourdon, P. Dumas, Mellin transforms and asymptotics
+(1995).
 """
+
 from __future__ import annotations
 
 from dataclasses import replace
@@ -54,12 +56,16 @@ class ExponentialSeries:
 
 
 def _with_meetings(problem: Problem, drafts: list[Draft], answer: ClosedForm) -> ClosedForm:
-    """Add the values where a frequency vanishes or two conjugate phases meet: the formula may read 0/0 there."""
+    """Add the values where a frequency vanishes or conjugate phases meet: the formula may read 0/0."""
     points: dict[Symbol, list[Expr]] = {}
     for d in drafts:
         frequencies = [c for _, c, _ in d.trig]
         for i, c in enumerate(frequencies):
-            for gap in (c, *(c + other for other in frequencies[:i]), *(c - other for other in frequencies[:i])):
+            for gap in (
+                c,
+                *(c + other for other in frequencies[:i]),
+                *(c - other for other in frequencies[:i]),
+            ):
                 for v in sorted(gap.free_symbols, key=str):
                     slope = gap.diff(v)
                     if slope.is_zero is False and not slope.has(v):
@@ -131,7 +137,9 @@ def _added(problem: Problem, parts: list[ClosedForm], name: str) -> ClosedForm:
     )  # fmt: skip
 
 
-def _series(problem: Problem, expansions: list[Expansion], plain: list[Draft], name: str) -> ClosedForm | None:
+def _series(
+    problem: Problem, expansions: list[Expansion], plain: list[Draft], name: str
+) -> ClosedForm | None:
     from ..dirichlet.gather import gather
 
     pieces, rest = gather(expansions)
@@ -145,7 +153,9 @@ def _series(problem: Problem, expansions: list[Expansion], plain: list[Draft], n
         return ClosedForm(S.Zero, strategy=name)
     u = Symbol("s")
     steps = [
-        Step("series of exponentials, transform in s", _SOURCE, _transform(p, u)) for p in pieces if p.dirichlet
+        Step("series of exponentials, transform in s", _SOURCE, _transform(p, u))
+        for p in pieces
+        if p.dirichlet
     ]
     answer = closed_form_of_pieces(problem, pieces, name, (_SOURCE,), tuple(steps))
     return None if answer is None else _with_removable(problem, pieces, answer)
@@ -154,7 +164,10 @@ def _series(problem: Problem, expansions: list[Expansion], plain: list[Draft], n
 def _with_removable(problem: Problem, pieces: list[Piece], answer: ClosedForm) -> ClosedForm:
     """Add the values where poles of single Dirichlet series cancel, so that their formula reads oo - oo."""
     exponents = [
-        (p.power - p.ratio * u).expand() for p in pieces for d in p.dirichlet for u in d.removable()  # type: ignore[attr-defined]
+        (p.power - p.ratio * u).expand()
+        for p in pieces
+        for d in p.dirichlet
+        for u in d.removable()  # type: ignore[attr-defined]
     ]
     if not any(e.free_symbols for e in exponents):
         return answer
@@ -166,7 +179,9 @@ def _with_removable(problem: Problem, pieces: list[Piece], answer: ClosedForm) -
 
 def _finished(answer: ClosedForm) -> ClosedForm:
     return replace(
-        answer, value=shortest(answer.value), special=tuple((where, shortest(v)) for where, v in answer.special)
+        answer,
+        value=shortest(answer.value),
+        special=tuple((where, shortest(v)) for where, v in answer.special),
     )
 
 
