@@ -8,21 +8,31 @@ from typing import TYPE_CHECKING, Any
 from sympy import And, Eq, Expr, Integral, Piecewise, S, Symbol, latex
 from sympy.logic.boolalg import Boolean
 
+from .gamma import GammaProduct
+
 if TYPE_CHECKING:
     from .verify import Verification
 
 
 @dataclass(frozen=True)
 class Step:
-    """One step of the derivation: what was done, by which theorem, to what result."""
+    """One step of the derivation: what was done, by which theorem, to what result.
+
+    A transform is kept as the Gamma product that it is, and written out only when somebody reads it.
+    """
 
     action: str
     theorem: str = ""
-    result: Expr | Boolean | None = None
+    result: Expr | Boolean | GammaProduct | None = None
+
+    @property
+    def formula(self) -> Expr | Boolean | None:
+        """The result as a SymPy object, a transform as a function of ``s``."""
+        return self.result.as_expr(Symbol("s")) if isinstance(self.result, GammaProduct) else self.result
 
     def __str__(self) -> str:
         theorem = f" [{self.theorem}]" if self.theorem else ""
-        result = f": {self.result}" if self.result is not None else ""
+        result = f": {self.formula}" if self.result is not None else ""
         return f"{self.action}{theorem}{result}"
 
 

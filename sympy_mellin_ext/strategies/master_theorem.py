@@ -10,7 +10,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 from dataclasses import replace
 
-from sympy import Eq, Expr, Max, Min, S, Symbol, oo
+from sympy import Eq, Expr, Max, Min, S, oo
 from sympy.core.sorting import default_sort_key
 from sympy.logic.boolalg import Boolean
 
@@ -78,7 +78,7 @@ def closed_form_of_terms(problem: Problem, terms: Sequence[Term], name: str) -> 
     """The closed form of a sum of terms with at most one kernel each."""
     sources = tuple(dict.fromkeys(k.source for t in terms for k in t.kernels if k.source))
     steps = tuple(
-        Step(f"kernel {k.name}, transform in s", k.source, k.product.as_expr(Symbol("s")))
+        Step(f"kernel {k.name}, transform in s", k.source, k.product)
         for t in terms
         for k in t.kernels
     )
