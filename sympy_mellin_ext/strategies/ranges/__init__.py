@@ -65,16 +65,16 @@ def _dispatch(problem: Problem) -> ClosedForm | None:
         if answer is None and f.has(*BROKEN):
             answer = split(problem)
         return answer
+    if lower is not -oo and upper is not oo and f.has(*circular.CIRCULAR):
+        answer = circular.on_quarters(problem)
+        if answer is not None or finite.shown_divergent(problem):
+            return answer
     if f.has(*BROKEN):
         return split(problem)
     if lower is -oo:
         return whole.on_left(problem)
     if upper is oo:
         return finite.on_tail(problem)
-    if f.has(*circular.CIRCULAR) and circular.is_circular(f, x):
-        answer = circular.on_quarters(problem)
-        if answer is not None or finite.shown_divergent(problem):
-            return answer
     return finite.on_finite(problem)
 
 

@@ -66,7 +66,7 @@ class HalfLineChanges:
         inner = inner.replace(
             lambda n: n.is_Pow and n.base == z, lambda n: ((u**2 - d) / c) ** (n.exp / p)
         ).xreplace({z: ((u**2 - d) / c) ** (1 / p)})
-        inner = inner * 2 * u / (p * (u**2 - d))
+        inner = inner * (2 / p) * u * (u**2 - d) ** -1
         lower = sqrt(d)
         answer = handed_on(problem, inner, u, lower)
         return (

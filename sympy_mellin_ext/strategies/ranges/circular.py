@@ -17,6 +17,7 @@ from sympy import (
     S,
     Symbol,
     asin,
+    cancel,
     chebyshevt,
     chebyshevu,
     cos,
@@ -35,16 +36,25 @@ from sympy import (
 from ...closed_form import ClosedForm, Step
 from ...problem import Problem
 from .combined import added
-from .finite import fresh, handed_on
+from .finite import fresh, handed_on, shown_divergent
 from .unit import solve_unit
 
 CIRCULAR = (sin, cos, tan, cot, sec, csc)
 _MOST_QUARTERS = 8
 _LARGEST_MULTIPLE = 12
+_LONGEST_SYMMETRIC = 30
+
+
+def _is_angle(node: Expr, x: Symbol) -> bool:
+    """A trigonometric function of a linear angle."""
+    if not isinstance(node, CIRCULAR) or not node.has_free(x):
+        return False
+    slope = node.args[0].diff(x)
+    return not slope.has_free(x) and slope.is_zero is not True
 
 
 def is_circular(f: Expr, x: Symbol) -> bool:
-    """Whether x occurs, and only inside trigonometric functions."""
+    """Whether x occurs, and only inside trigonometric functions of linear angles."""
     seen = False
     stack = [f]
     while stack:
@@ -53,7 +63,7 @@ def is_circular(f: Expr, x: Symbol) -> bool:
             continue
         if node == x:
             return False
-        if isinstance(node, CIRCULAR):
+        if _is_angle(node, x):
             seen = True
             continue
         stack.extend(node.args)
@@ -63,6 +73,11 @@ def is_circular(f: Expr, x: Symbol) -> bool:
 def on_quarters(problem: Problem) -> ClosedForm | None:
     """A range of whole quarter turns of the smallest angle in the integrand."""
     f, x = problem.integrand, problem.variable
+    moment = f.is_Mul and x in f.args
+    if moment:
+        f = f / x
+    if not is_circular(f, x):
+        return None
     for rate in _rates(f, x):
         if problem.facts.sign(rate) != 1:
             continue
@@ -72,8 +87,29 @@ def on_quarters(problem: Problem) -> ClosedForm | None:
         g = _algebraic(f, x, rate, (first, last) == (0, 1))
         if g is None:
             return problem.refuse("range", "not a function of sin and cos of one angle")
-        return _by_quarters(problem, g, first, last, rate) or _by_halves(problem, g, first, last, rate)
+        if moment:
+            return _first_moment(problem, g, first, last, rate)
+        return _solved(problem, g, first, last, rate)
     return problem.refuse("range", "not a whole number of quarter turns")
+
+
+def _solved(problem: Problem, g: Expr, first: int, last: int, rate: Expr) -> ClosedForm | None:
+    if last - first == 4 and not g.has(_COSINE):
+        g = g.xreplace({_SINE: _COSINE})  # a full turn may start anywhere
+    answer = _by_quarters(problem, g, first, last, rate)
+    if answer is None and not shown_divergent(problem):
+        answer = _by_halves(problem, g, first, last, rate)
+    return answer
+
+
+def _first_moment(problem: Problem, g: Expr, first: int, last: int, rate: Expr) -> ClosedForm | None:
+    """``x*g(x)`` with g symmetric about the centre of the range: the centre times the integral of g."""
+    quarters = [_quarter(g, q) for q in range(first, last)]
+    if (first + last) % 2 or quarters != quarters[::-1]:
+        return None
+    answer = _solved(problem, g, first, last, rate)
+    centre = (problem.lower + problem.upper) / 2
+    return None if answer is None else added(problem, [(centre, answer)], Step("reflection about the centre"))
 
 
 def _whole(turns: Expr) -> int | None:
@@ -85,10 +121,8 @@ def _rates(f: Expr, x: Symbol) -> list[Expr]:
     """For every class of commensurable angles the greatest w with all of them of the form ``n*w*x + constant``."""
     classes: list[list[Expr]] = []
     for node in preorder_traversal(f):
-        if isinstance(node, CIRCULAR) and node.has_free(x):
+        if _is_angle(node, x):
             slope = node.args[0].diff(x)
-            if slope.has_free(x) or slope.is_zero:
-                return []
             for members in classes:
                 if (slope / members[0]).cancel().is_Rational:
                     members.append(slope)
@@ -105,18 +139,20 @@ def _rates(f: Expr, x: Symbol) -> list[Expr]:
     return rates
 
 
+# sin and cos of the angle anywhere, and as they are in the first quarter
+_SINE, _COSINE = Dummy("sin", real=True), Dummy("cos", real=True)
 _SIN, _COS = Dummy("sin", positive=True), Dummy("cos", positive=True)
 
 
 def _algebraic(f: Expr, x: Symbol, rate: Expr, first_quarter: bool) -> Expr | None:
-    """``f`` in ``sin(rate*x)`` and ``cos(rate*x)``, as they are in the first quarter.
+    """``f`` in ``sin(rate*x)`` and ``cos(rate*x)``.
 
-    There another angle may occur as a multiple of ``asin(sin(rate*x))``.
+    In the first quarter another angle may occur as a multiple of ``asin(sin(rate*x))``.
     """
-    sn, cs = _SIN, _COS
+    sn, cs = _SINE, _COSINE
     if not f.has_free(x):
         return f
-    if isinstance(f, CIRCULAR):
+    if _is_angle(f, x):
         angle = f.args[0]
         n = (angle.diff(x) / rate).cancel()
         shift = angle.subs(x, 0)
@@ -141,7 +177,7 @@ def _algebraic(f: Expr, x: Symbol, rate: Expr, first_quarter: bool) -> Expr | No
 def _quarter(g: Expr, q: int) -> Expr:
     """``g`` on quarter number q as a function of the angle in (0, pi/2), run through in either direction."""
     s, c = ((1, 1), (1, -1), (-1, -1), (-1, 1))[q % 4]
-    return g.xreplace({_SIN: s * _SIN, _COS: c * _COS})
+    return g.xreplace({_SINE: s * _SIN, _COSINE: c * _COS})
 
 
 def _by_quarters(problem: Problem, g: Expr, first: int, last: int, rate: Expr) -> ClosedForm | None:
@@ -173,12 +209,27 @@ def _first_quarter(problem: Problem, g: Expr) -> ClosedForm | None:
     """(0, pi/2): ``t = sin(x)**2`` with ``dx = dt/(2*sqrt(t*(1-t)))``, or ``u = tan(x)``."""
     t = fresh(problem, positive=True)
     a, b = _SIN, _COS
-    answer = solve_unit(problem, g.xreplace({a: sqrt(t), b: sqrt(1 - t)}) / (2 * sqrt(t) * sqrt(1 - t)), t)
-    if answer is not None:
-        return answer
+    symmetric = _complementary(problem, g)
+    if symmetric is not None:
+        return symmetric
+    for first, second in ((a, b), (b, a)):
+        inner = g.xreplace({first: sqrt(t), second: sqrt(1 - t)}) / (2 * sqrt(t) * sqrt(1 - t))
+        answer = solve_unit(problem, inner, t)
+        if answer is not None or shown_divergent(problem):
+            return answer
     u = fresh(problem, positive=True)
     inner = g.xreplace({a: u / sqrt(1 + u**2), b: 1 / sqrt(1 + u**2)})
     return handed_on(problem, _joined(inner / (1 + u**2)), u)
+
+
+def _complementary(problem: Problem, g: Expr) -> ClosedForm | None:
+    """``g(x) + g(pi/2 - x)`` constant with both positive: the constant times pi/4."""
+    if not g.is_positive or not g.has(tan, Pow) or g.count_ops() > _LONGEST_SYMMETRIC:
+        return None
+    total = cancel(together(g + g.xreplace({_SIN: _COS, _COS: _SIN})))
+    if total.has(_SIN, _COS):
+        return None
+    return ClosedForm(total * pi / 4, S.true, None, "ranges", (Step("reflection x -> pi/2 - x"),))
 
 
 def _by_halves(problem: Problem, g: Expr, first: int, last: int, rate: Expr) -> ClosedForm | None:
@@ -189,7 +240,7 @@ def _by_halves(problem: Problem, g: Expr, first: int, last: int, rate: Expr) -> 
     halves = []
     for half in range(first // 2, last // 2):
         turn = 1 if half % 2 == 0 else -1
-        inner = g.xreplace({_SIN: turn * 2 * u / (1 + u**2), _COS: (1 - u**2) / (1 + u**2)})
+        inner = g.xreplace({_SINE: turn * 2 * u / (1 + u**2), _COSINE: (1 - u**2) / (1 + u**2)})
         halves.append(_joined(inner * 2 / (1 + u**2)))
     parts = _counted(halves, lambda part: handed_on(problem, part, u), rate)
     return None if parts is None else added(problem, parts, Step("u = tan(x/2)", "from memory: Weierstrass"))

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 from dataclasses import replace
 
-from sympy import Add, Expr, Mul, S, Symbol
+from sympy import Add, Expr, Mul, S, Symbol, expand_mul, hyper, meijerg
 from sympy.core.relational import Relational
 from sympy.logic.boolalg import Boolean
 
@@ -47,7 +47,11 @@ def added(problem: Problem, parts: Sequence[Weighted], step: Step | None = None)
 
 
 def _total(parts: Sequence[tuple[Expr, Expr]]) -> Expr:
-    return Add(*(Mul(w, v) for w, v in parts))
+    total = Add(*(Mul(w, v) for w, v in parts))
+    if len(parts) > 1 and total.has(hyper, meijerg):
+        # equal series of two parts may cancel
+        total = shortened(expand_mul(total))
+    return total
 
 
 def _at(answer: ClosedForm, where: Boolean) -> Expr:

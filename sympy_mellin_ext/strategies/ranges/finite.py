@@ -113,7 +113,7 @@ def on_tail(problem: Problem) -> ClosedForm | None:
         answer = solve_unit(problem, f.xreplace({x: a / t}) * a / t**2, t)
         if answer is not None:
             return answer
-    answer = handed_on(problem, f.xreplace({x: x + a}).xreplace({x: t}), t)
+    answer = handed_on(problem, f.xreplace({x: a + t}), t)
     if answer is None and a is S.One:
         answer = handed_on(problem, f.xreplace({x: exp(t)}) * exp(t), t)
     return doubled(problem, answer, S.One, "shift of the lower end to 0")

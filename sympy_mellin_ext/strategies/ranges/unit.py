@@ -12,6 +12,7 @@ from sympy import (
     Eq,
     Expr,
     Function,
+    Piecewise,
     Poly,
     Pow,
     Rational,
@@ -339,16 +340,15 @@ def _argument(kernel: Kernel) -> Expr:
 
 
 def _inverse(rows: list[tuple[Expr, Rational, int]], scale: Expr, facts: Facts) -> Expr | None:
-    """The inverse transform at a positive scale; at a number the formula for every scale may be the better one."""
-    value = inverse_mellin(rows, scale, facts)
-    if scale.is_number and (value is None or value.has(hyper, meijerg)):
+    """The inverse transform at a positive scale; at a number by the formula for every scale where it has a name."""
+    if scale.is_number:
         w = Dummy("w", positive=True)
         general = inverse_mellin(rows, w, facts)
-        if general is not None and not general.has(hyper, meijerg):
+        if general is not None and not general.has(hyper, meijerg, Piecewise):
             there = general.subs(w, scale)
             if not there.has(*BAD):
                 return there
-    return value
+    return inverse_mellin(rows, scale, facts)
 
 
 def _lone(kernel: Kernel, term: _Term) -> _Joint:
