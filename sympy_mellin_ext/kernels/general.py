@@ -24,6 +24,15 @@ def hyper_transform(ap: tuple[Expr, ...], bq: tuple[Expr, ...]) -> GammaProduct 
     return GammaProduct(constant, S.One, cancel(tuple(factors)))
 
 
+def gauss_transform(a: Expr, b: Expr, c: Expr) -> GammaProduct | None:
+    """Transform of ``z -> 2F1(a, b; c; 1 - z)`` (Barnes' integral for both exponents at z = 0, DLMF 15.6.7)."""
+    if any(p.is_Integer and p.is_nonpositive for p in (a, b, c, c - a, c - b)):
+        return None
+    constant = gamma(c) / (gamma(a) * gamma(b) * gamma(c - a) * gamma(c - b))
+    product = GammaProduct.of(up=[(0, 1), (c - a - b, 1), (a, -1), (b, -1)])
+    return GammaProduct(constant, S.One, product.factors)
+
+
 def meijer_transform(g: meijerg) -> GammaProduct:
     """Transform of ``z -> G(z)``, the integrand of its definition (DLMF 16.17.1)."""
     up = [(b, 1) for b in g.bm] + [(1 - a, -1) for a in g.an]

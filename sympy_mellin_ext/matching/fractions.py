@@ -8,7 +8,24 @@ from __future__ import annotations
 
 from dataclasses import dataclass, replace
 
-from sympy import Add, Dummy, Expr, Integer, Poly, S, Symbol, acos, cos, factor_list, gcd, gcdex, pi, sin, sqrt
+from sympy import (
+    Add,
+    Dummy,
+    Expr,
+    Integer,
+    Poly,
+    S,
+    Symbol,
+    acos,
+    cos,
+    factor_list,
+    gcd,
+    gcdex,
+    pi,
+    sin,
+    sqrt,
+)
+from sympy.logic.boolalg import Boolean
 from sympy.polys.polyerrors import PolynomialError
 
 from ..kernels.elementary import power as power_transform
@@ -187,18 +204,7 @@ def _quadratic(
         return _real_roots(numerator, b, c, n, ratio, facts, y)
     m = sqrt(c)
     cosine = b / (2 * m)
-    if isinstance(cosine, cos) and cosine.args[0].is_real:
-        t = cosine.args[0]
-        angle, sine = t, sin(t)
-        margin = None if facts.implies(abs(t) < pi) else abs(t) < pi
-    else:
-        angle, sine = acos(cosine), (
-                sqrt((1 - cosine**2).expand()) if cosine.is_number else sqrt(1 - cosine) * sqrt(1 + cosine)
-            )
-        margin = None if facts.sign(b + 2 * m) == 1 else b + 2 * m > 0
-        if facts.sign(b) == 1:
-            margin = None
-    condition = S.true if margin is None else margin
+    angle, sine, condition = turn_of(cosine, facts)
     if condition == False:  # noqa: E712 - SymPy Boolean
         return None
     # residues at rho = -m*exp(-I*t), with e = exp(-I*t) kept as a symbol: complex numbers as pairs
@@ -212,6 +218,16 @@ def _quadratic(
             kernel = Kernel("power", product, ratio, wave, condition, True, _SOURCE, (Integer(i),))
             drafts.append(Draft(coefficient=weight * m**-i, kernels=(kernel,)))
     return drafts
+
+
+def turn_of(cosine: Expr, facts: Facts) -> tuple[Expr, Expr, Boolean]:
+    """The angle t with this cosine, its sine, and the condition for ``abs(t) < pi`` (and analytic beyond)."""
+    if isinstance(cosine, cos) and cosine.args[0].is_real:
+        t = cosine.args[0]
+        return t, sin(t), S.true if facts.implies(abs(t) < pi) else abs(t) < pi
+    sine = sqrt((1 - cosine**2).expand()) if cosine.is_number else sqrt(1 - cosine) * sqrt(1 + cosine)
+    condition = S.true if facts.sign(cosine) == 1 or facts.sign(cosine + 1) == 1 else cosine + 1 > 0
+    return acos(cosine), sine, condition
 
 
 def _residues(numerator: Poly, m: Expr, cosine: Expr, sine: Expr, n: int, y: Symbol) -> list[tuple[Expr, Expr]]:

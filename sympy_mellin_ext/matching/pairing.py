@@ -67,7 +67,7 @@ def _merge_logarithms(kernels: tuple[Kernel, ...]) -> tuple[Kernel, ...]:
         (
             k
             for k in kernels
-            if k.name == "power" and k.wave is None and k.ratio == first.ratio and k.product.scale == first.product.scale
+            if (k.name, k.wave, k.ratio, k.product.scale) == ("power", None, first.ratio, first.product.scale)
         ),
         None,
     )

@@ -15,12 +15,13 @@ from sympy import (
     S,
     Sum,
     Symbol,
+    airyai,
+    airybi,
     arg,
     binomial,
     cos,
     cosh,
     exp,
-    factor_terms,
     hyper,
     log,
     meijerg,
@@ -35,13 +36,13 @@ from sympy.ntheory.multinomial import multinomial_coefficients
 
 from ..gamma import GammaProduct
 from ..kernels import rows
-from ..kernels.elementary import LOG1P
 from ..kernels.elementary import power as power_transform
-from ..kernels.general import hyper_transform, meijer_transform
 from ..kernels.table import Row
 from ..region import Facts, real_part
 from .fractions import pole_kernel, split
+from .logarithms import logarithm
 from .monomials import monomial, monomials
+from .special import airy, explicit_series, hypergeometric, meijer
 from .term import Kernel, Term, Wave
 from .waves import Draft, finish
 
@@ -80,7 +81,7 @@ class Reader:
             return rule(self, expr)
         row = rows().get(kind)
         if row is not None:
-            return self._row(row, expr)
+            return self.row(row, expr)
         return None
 
     def _sum(self, expr: Expr) -> Drafts | None:
@@ -126,8 +127,8 @@ class Reader:
         if kind is Add:
             return self._sum_power(base, exponent)
         if kind is exp:
-            return self._exponential(base.args[0] * exponent) if self._real(base.args[0]) else None
-        if kind is Pow and (exponent.is_integer or self._nonnegative(base.base)):
+            return self._exponential(base.args[0] * exponent) if self.real(base.args[0]) else None
+        if kind is Pow and (exponent.is_integer or self.nonnegative(base.base)):
             return self._power(Pow(base.base, base.exp * exponent, evaluate=False))
         if exponent.is_Integer and 0 < exponent <= _MAX_KERNEL_POWER:
             part = self.read(base)
@@ -137,7 +138,7 @@ class Reader:
     def _product_power(self, base: Mul, exponent: Expr) -> Drafts | None:
         drafts: Drafts = [Draft()]
         for a in base.args:
-            if exponent.is_integer or self._nonnegative(a):
+            if exponent.is_integer or self.nonnegative(a):
                 part = self.read(Pow(a, exponent))
             else:
                 return None
@@ -172,9 +173,10 @@ class Reader:
         for middle in range(3):
             (c0, p0), (c1, p1) = (parts[i] for i in range(3) if i != middle)
             cm, pm = parts[middle]
-            if 2 * pm == p0 + p1 and (cm**2 - 4 * c0 * c1).expand() is S.Zero and self.facts.sign(cm) == 1:
-                if self.facts.sign(c0) == 1:
-                    return [(sqrt(c0), p0 / 2), (sqrt(c1), p1 / 2)]
+            if 2 * pm != p0 + p1 or (cm**2 - 4 * c0 * c1).expand() is not S.Zero:
+                continue
+            if self.facts.sign(cm) == 1 and self.facts.sign(c0) == 1:
+                return [(sqrt(c0), p0 / 2), (sqrt(c1), p1 / 2)]
         return None
 
     def _binomial_power(self, parts: list[tuple[Expr, Expr]], exponent: Expr) -> Drafts | None:
@@ -199,7 +201,7 @@ class Reader:
                 return None
             kernel = pole_kernel(-int(exponent), -c1 / c0, ratio)
             return [Draft(coefficient=Pow(c0, exponent), power=p0 * exponent, kernels=(kernel,))]
-        kernel = self._kernel(
+        kernel = self.kernel(
             "power", power_transform(-exponent), c1 / c0, ratio, "DLMF 5.12.3", arguments=(-exponent,)
         )
         if kernel is None:
@@ -271,67 +273,7 @@ class Reader:
             Draft(coefficient=flip * f_odd(fixed), trig=((there, c, p),)),
         ]
 
-    def _logarithm(self, expr: Expr) -> Drafts | None:
-        """``log`` of a product of positive factors is a sum; ``log(c0 + c1*x**r)`` is a row."""
-        inner = expr.args[0]
-        x = self.x
-        if inner == x:
-            return [Draft(logs=1)]
-        single = monomial(inner, x)
-        if single is not None:
-            c, p = single
-            if self.facts.sign(c) != 1:
-                return None
-            moving = [Draft(coefficient=p, logs=1)]
-            return moving if c is S.One else [*moving, Draft(coefficient=log(c))]
-        kind = type(inner)
-        if kind is Mul:
-            drafts: Drafts = []
-            for a in inner.args:
-                if not self._nonnegative(a):
-                    return None
-                part = self._logarithm(log(a, evaluate=False)) if a.has_free(x) else [Draft(coefficient=log(a))]
-                if part is None:
-                    return None
-                drafts.extend(part)
-            return drafts
-        if kind is Pow and not inner.exp.has_free(x) and self._nonnegative(inner.base):
-            part = self._logarithm(log(inner.base, evaluate=False))
-            return None if part is None else [d.scaled(inner.exp) for d in part]
-        if kind is exp and self._real(inner.args[0]):
-            return self.read(inner.args[0])
-        if kind is Add:
-            return self._log_sum(inner)
-        return None
-
-    def _log_sum(self, inner: Add) -> Drafts | None:
-        from sympy import together
-
-        parts = monomials(inner, self.x)
-        if parts is None:
-            fraction = together(inner)
-            return self._logarithm(log(fraction, evaluate=False)) if type(fraction) is Mul else None
-        if len(parts) != 2:
-            return None
-        (c0, p0), (c1, p1) = parts
-        if not p0.is_zero and p1.is_zero:
-            (c0, p0), (c1, p1) = (c1, p1), (c0, p0)
-        if self.facts.sign(c0) != 1:
-            return None
-        ratio = p1 - p0
-        if self.facts.sign(ratio) in (None, 0):
-            return None
-        kernel = self._kernel("log1p", LOG1P, c1 / c0, ratio, "from memory: Gradshteyn-Ryzhik 4.293.3")
-        if kernel is None:
-            return None
-        drafts = [Draft(kernels=(kernel,))]
-        if c0 is not S.One:
-            drafts.append(Draft(coefficient=log(c0)))
-        if not p0.is_zero:
-            drafts.append(Draft(coefficient=p0, logs=1))
-        return drafts
-
-    def _row(self, row: Row, expr: Expr) -> Drafts | None:
+    def row(self, row: Row, expr: Expr) -> Drafts | None:
         args = list(expr.args)
         inner = args.pop(row.argument)
         if any(a.has_free(self.x) for a in args):
@@ -358,7 +300,7 @@ class Reader:
             product = row.transform(*args).with_scale(c)
             turned = Kernel(row.name, product, ratio, wave, S.true, False, row.source, tuple(args))
             return [Draft(kernels=(turned,))]
-        kernel = self._kernel(
+        kernel = self.kernel(
             row.name, row.transform(*args), c, ratio, row.source, arguments=tuple(args), condition=condition
         )
         if kernel is None:
@@ -388,12 +330,12 @@ class Reader:
                 S.true, False, source, (*expr.ap, *expr.bq),
             )  # fmt: skip
             return [Draft(kernels=(kernel,))]
-        kernel = self._kernel(type(expr).__name__, product, turn * c, ratio, source)
+        kernel = self.kernel(type(expr).__name__, product, turn * c, ratio, source)
         return None if kernel is None else [Draft(kernels=(kernel,))]
 
     # -- scales ------------------------------------------------------------------------------------
 
-    def _kernel(
+    def kernel(
         self,
         name: str,
         product: GammaProduct,
@@ -418,7 +360,7 @@ class Reader:
                 inside = True
         return Kernel(name, product.with_scale(scale), ratio, wave, condition, inside, source, arguments)
 
-    def _nonnegative(self, expr: Expr) -> bool:
+    def nonnegative(self, expr: Expr) -> bool:
         """Whether ``expr >= 0`` for every x > 0, by what is easily seen."""
         if not expr.has_free(self.x):
             return self.facts.sign(expr) in (0, 1)
@@ -426,25 +368,29 @@ class Reader:
             return True
         kind = type(expr)
         if kind in (Add, Mul):
-            return all(self._nonnegative(a) for a in expr.args)
+            return all(self.nonnegative(a) for a in expr.args)
         if kind is Pow:
-            return bool(expr.exp.is_real) and (self._nonnegative(expr.base) or bool(expr.exp.is_even and self._real(expr.base)))
-        return kind is exp and self._real(expr.args[0])
+            even = bool(expr.exp.is_even) and self.real(expr.base)
+            return bool(expr.exp.is_real) and (even or self.nonnegative(expr.base))
+        return kind is exp and self.real(expr.args[0])
 
-    def _real(self, expr: Expr) -> bool:
+    def real(self, expr: Expr) -> bool:
         if expr == self.x:
             return True
         if not expr.has_free(self.x):
             return bool(expr.is_real)
         if type(expr) in (Add, Mul):
-            return all(self._real(a) for a in expr.args)
+            return all(self.real(a) for a in expr.args)
         if type(expr) is Pow:
-            return bool(expr.exp.is_integer) and self._real(expr.base) or self._nonnegative(expr.base) and bool(expr.exp.is_real)
-        return type(expr) is log and self._nonnegative(expr.args[0])
+            whole = bool(expr.exp.is_integer) and self.real(expr.base)
+            return whole or (self.nonnegative(expr.base) and bool(expr.exp.is_real))
+        return type(expr) is log and self.nonnegative(expr.args[0])
 
 
 def _is_fraction(expr: Expr, x: Symbol) -> bool:
-    return type(expr) is Pow and type(expr.base) is Add and expr.exp.is_Integer and expr.exp.is_negative and expr.has_free(x)
+    if type(expr) is not Pow or type(expr.base) is not Add:
+        return False
+    return bool(expr.exp.is_Integer and expr.exp.is_negative and expr.has_free(x))
 
 
 def sector(scale: Expr, lam: Rational) -> Boolean:
@@ -456,59 +402,9 @@ def sector(scale: Expr, lam: Rational) -> Boolean:
     return Abs(arg(scale)) < pi * lam / 2
 
 
-def _hypergeometric(reader: Reader, expr: Expr) -> Drafts | None:
-    """``pFq(a; b; -c*x**r)`` for p <= q + 1: the coefficient formula, DLMF 16.5.1."""
-    ap, bq, z = expr.args
-    return reader.general(expr, z, lambda: hyper_transform(tuple(ap), tuple(bq)), "DLMF 16.5.1", -1)
-
-
-def _meijer(reader: Reader, expr: Expr) -> Drafts | None:
-    """Meijer's G at a positive argument is a Gamma product by definition, DLMF 16.17.1."""
-    return reader.general(expr, expr.argument, lambda: meijer_transform(expr), "DLMF 16.17.1", 1)
-
-
-def _explicit_series(reader: Reader, expr: Expr) -> Drafts | None:
-    """``Sum(c(n)*x**(k*n + q), (n, 0, oo))`` by the coefficient formula, where phi passes the growth test."""
-    from ..series import Growth, coefficient_transform
-
-    x = reader.x
-    if len(expr.limits) != 1 or len(expr.limits[0]) != 3:
-        return None
-    n, first, last = expr.limits[0]
-    if last is not S.Infinity or not first.is_Integer:
-        return None
-    body = expr.function if first is S.Zero else expr.function.subs(n, n + first)
-    if body.is_Add:
-        body = factor_terms(body)
-    coefficients, exponent = [], S.Zero
-    for factor in Mul.make_args(body.expand(power_exp=False, func=False) if body.is_Mul and _adds(body, x) else body):
-        if not factor.has_free(x):
-            coefficients.append(factor)
-            continue
-        base, power = factor.as_base_exp()
-        single = monomial(base, x)
-        if single is None:
-            return None
-        coefficients.append(Pow(single[0], power))
-        exponent += single[1] * power
-    exponent = exponent.expand()
-    step, front = exponent.coeff(n, 1), exponent.coeff(n, 0)
-    if step.has_free(n) or (exponent - step * n - front).expand() is not S.Zero or reader.facts.sign(step) != 1:
-        return None
-    transform = coefficient_transform(Mul(*coefficients), n, reader.facts.sign)
-    if isinstance(transform, Growth) or transform.growth.ok is not True or transform.extras:
-        return None
-    kernel = reader._kernel("series", transform.product, S.One, step, "Hardy, Ramanujan: Twelve Lectures (1940), ch. XI")
-    return None if kernel is None else [Draft(power=front, kernels=(kernel,))]
-
-
-def _adds(body: Expr, x: Symbol) -> bool:
-    return any(f.is_Add and f.has_free(x) for f in body.args)
-
-
 def _magnitude(reader: Reader, expr: Expr) -> Drafts | None:
     inner = expr.args[0]
-    return reader.read(inner) if reader._nonnegative(inner) else None
+    return reader.read(inner) if reader.nonnegative(inner) else None
 
 
 _RULES: dict[type, Callable[[Reader, Expr], Drafts | None]] = {
@@ -517,11 +413,13 @@ _RULES: dict[type, Callable[[Reader, Expr], Drafts | None]] = {
     cos: Reader._trigonometric,
     sinh: Reader._trigonometric,
     cosh: Reader._trigonometric,
-    log: Reader._logarithm,
+    log: logarithm,
     Abs: _magnitude,
-    hyper: _hypergeometric,
-    meijerg: _meijer,
-    Sum: _explicit_series,
+    airyai: airy,
+    airybi: airy,
+    hyper: hypergeometric,
+    meijerg: meijer,
+    Sum: explicit_series,
 }
 
 

@@ -100,7 +100,7 @@ class UnitReader(Reader):
         product = transform()
         if product is None:
             return None
-        kernel = self._kernel(type(expr).__name__, product, turn * single[0], single[1], source)
+        kernel = self.kernel(type(expr).__name__, product, turn * single[0], single[1], source)
         return None if kernel is None else [Draft(kernels=(kernel,))]
 
     def _unit_power(self, ratio: Expr, e: Expr) -> Drafts:
@@ -183,7 +183,7 @@ class UnitReader(Reader):
         sign0, sign1 = self.facts.sign(c0), self.facts.sign(c1)
         if sign0 is None or sign1 is None or sign0 * sign1 != -1:
             return super()._binomial_power(parts, exponent)
-        kernel = self._kernel(
+        kernel = self.kernel(
             "power", power_transform(-exponent), c1 / c0, ratio, "DLMF 5.12.3", (-exponent,)
         )
         return None if kernel is None else [front.times(Draft(kernels=(kernel,)))]
@@ -201,7 +201,7 @@ class UnitReader(Reader):
                 if _opposite(c0, c1):
                     drafts.append(Draft(kernels=(_unit_log(ratio),)))
                 else:
-                    kernel = self._kernel(
+                    kernel = self.kernel(
                         "log1p", LOG1P, c1 / c0, ratio, "from memory: Gradshteyn-Ryzhik 4.293.3"
                     )
                     if kernel is None:
@@ -216,7 +216,7 @@ class UnitReader(Reader):
 
     # -- scales ------------------------------------------------------------------------------------
 
-    def _kernel(
+    def kernel(
         self,
         name: str,
         product: GammaProduct,
@@ -229,7 +229,7 @@ class UnitReader(Reader):
         """As on the half line for positive scales; others where the series at 0 reaches to x = 1."""
         known = self.facts.sign(scale) if scale.is_extended_real else None
         if known == 1:
-            return super()._kernel(name, product, scale, ratio, source, arguments, condition)
+            return super().kernel(name, product, scale, ratio, source, arguments, condition)
         if known == 0 or self.facts.sign(ratio) != 1:
             return None
         if product.delta < 0:
@@ -245,7 +245,7 @@ class UnitReader(Reader):
                 condition = And(condition, scale > -1)
         return Kernel(name, product.with_scale(scale), ratio, None, condition, True, source, arguments)
 
-    def _nonnegative(self, expr: Expr) -> bool:
+    def nonnegative(self, expr: Expr) -> bool:
         if type(expr) is Add and len(expr.args) == 2:
             parts = monomials(expr, self.x)
             if parts is not None and len(parts) == 2:
@@ -255,7 +255,7 @@ class UnitReader(Reader):
                     return True
         if type(expr) is log and expr.args[0].is_Add:
             return False
-        return super()._nonnegative(expr)
+        return super().nonnegative(expr)
 
 
 def _opposite(c0: Expr, c1: Expr) -> bool:
