@@ -27,6 +27,8 @@ from dataclasses import asdict, dataclass
 from multiprocessing.connection import Connection
 from typing import Any
 
+import sympy_mellin_ext
+
 from . import host_forms
 
 MODULES = (
@@ -67,8 +69,6 @@ def test_names(only: str = "") -> Iterator[str]:
 
 def run_one(test: str, mode: str, pipe: Connection) -> None:
     """Run one test function in this process and send what happened."""
-    import sympy_mellin_ext
-
     name, function = test.split(":")
     module = importlib.import_module(name)
     if mode != "stock":
@@ -129,6 +129,7 @@ def run_all(work: list[tuple[str, str]], jobs: int, seconds: float) -> list[Run]
             ours.close()
             running.remove(entry)
             done.append(Run(test, mode, outcome, took, detail))
+            print(f"{len(done)}/{len(work)} {outcome:9} {took:6.1f} s  {mode:8} {test}", file=sys.stderr)
     return done
 
 
