@@ -204,7 +204,7 @@ class GammaProduct:
             else:
                 # Gamma(a)*Gamma(n-a) = pi/sin(pi a) * (1-a)_(n-1)
                 rest.remove(partner)
-                n = int((partner[0] + a))
+                n = int(partner[0] + a)
                 factor = sine_series(a, r, e, terms)
                 for j in range(n - 1):
                     factor = multiply(factor, linear_series(1 - a + j, -r, e, terms), terms)

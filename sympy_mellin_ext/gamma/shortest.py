@@ -140,7 +140,7 @@ def _cancel_integer_differences(ups: list[Expr], downs: list[Expr], outside: lis
             k = _difference(a, b)
             if k.is_Integer and (best is None or abs(k) < abs(best[0])):
                 best = (int(k), b)
-        if best is None or abs(best[0]) > _LONGEST_POLYNOMIAL and not a.is_Rational:
+        if best is None or (abs(best[0]) > _LONGEST_POLYNOMIAL and not a.is_Rational):
             continue
         k, b = best
         ups.remove(a)
