@@ -335,7 +335,7 @@ def _at_unit(upper: Params, lower: Params, z: Any) -> Any:
         return None if found is None else found.subs(y, 1)
     if len(upper) == 3 and z == 1:
         for u, v in pfq_sums.orders(upper, lower):
-            if u[:2] == (1, 1) and v[0] == 2 and as_int(u[2] - 1) != 0:  # DLMF 16.4.?: digamma series 5.7.6
+            if u[:2] == (1, 1) and v[0] == 2 and as_int(u[2] - 1) != 0:  # DLMF 5.7.6 summed by parts
                 a, b = u[2], v[1]
                 if not is_nonpositive_int(b - a):
                     return (b - 1) / (a - 1) * (polygamma(0, b - 1) - polygamma(0, b - a))

@@ -62,7 +62,7 @@ def _bessel_y(a: Params, b: Params, c: Params, d: Params, w: Symbol) -> Any:
 
 
 def _damped_tricomi(a: Params, b: Params, c: Params, d: Params, w: Symbol) -> Any:
-    """exp(-w)*U: DLMF 13.4.17 with 13.2.40."""
+    """exp(-w)*U: DLMF 13.4.18."""
     u = tricomi(c[0] - a[1], 1 + a[0] - a[1], w)
     return None if u is None else expand_mul(power(w, a[0]) * exp(-w) * u)
 
@@ -95,7 +95,7 @@ def _two_by_two_hyper(a: Params, b: Params, w: Any) -> Any:
 
 
 def _bessel_jk(a: Params, b: Params, c: Params, d: Params, w: Symbol) -> Any:
-    """J_nu*K_nu of one argument: DLMF 10.22.? in its Mellin form, checked from the series."""
+    """J_nu*K_nu of one argument: from memory, tested against the contour integral."""
     p, nu = a[0], 2 * (a[2] - a[0])
     if _same(a[1] - p - HALF, d[0] - 1 - nu / 2 + p):
         x = 2 * sqrt(2) * w**QUARTER
@@ -104,7 +104,7 @@ def _bessel_jk(a: Params, b: Params, c: Params, d: Params, w: Symbol) -> Any:
 
 
 def _bessel_ik(a: Params, b: Params, c: Params, d: Params, w: Symbol) -> Any:
-    """I_nu*K_nu of one argument: DLMF 10.43(iv)."""
+    """I_nu*K_nu of one argument: from memory, tested against the contour integral."""
     p, nu = a[0], a[1] - a[0]
     if _same(b[0] - HALF + p, d[0] - 1 - nu + p):
         return 2 * sqrt(pi) * power(w, p) * besseli(nu, sqrt(w)) * bessel_k(nu, sqrt(w))
@@ -145,7 +145,7 @@ ROWS: dict[tuple[int, int, int, int], tuple[_Row, ...]] = {
 def arrangements(sig: Signature) -> Iterator[tuple[Params, Params, Params, Params]]:
     """All distinct orders of the four parameter lists."""
     parts = [list(dict.fromkeys(permutations(p))) for p in sig]
-    yield from product(*parts)  # type: ignore[misc]
+    yield from product(*parts)
 
 
 def look_up(sig: Signature, w: Symbol) -> Any:

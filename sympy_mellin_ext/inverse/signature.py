@@ -91,7 +91,7 @@ def power(base: Any, exponent: Any) -> Any:
 
 
 def _integer_power(n: int, exponent: Any) -> Any:
-    found = perfect_power(n) if n > 1 else False
+    found: Any = perfect_power(n) if n > 1 else False
     if found:
         return Integer(found[0]) ** (found[1] * exponent)
     return Integer(n) ** exponent
@@ -119,7 +119,8 @@ def normalise(factors: Iterable[tuple[Expr, Rational, int]]) -> Normalised:
 
 def _cancel_side(num: Params, den: Params, side: int) -> tuple[Params, Params, list[Zero]]:
     """Cancel Gammas of one side whose shifts differ by n >= 0: what is left is ``(c + side*u)_n``."""
-    top, bottom, zeros = list(num), list(den), []
+    top, bottom = list(num), list(den)
+    zeros: list[Zero] = []
     while True:
         best: tuple[int, int, int] | None = None
         for i, a in enumerate(top):

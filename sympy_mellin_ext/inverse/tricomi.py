@@ -39,9 +39,9 @@ def bessel_k(nu: Any, x: Any) -> Any:
         nu = -nu
     if nu.is_Rational and nu.q == 2 and nu <= Rational(13, 2):
         n = int(nu - HALF)
-        total = sum(
-            (factorial(n + k) / (factorial(k) * factorial(n - k)) / (2 * x) ** k for k in range(n + 1)), S.Zero
-        )
+        total = S.Zero
+        for k in range(n + 1):
+            total += factorial(n + k) / (factorial(k) * factorial(n - k)) / (2 * x) ** k
         return sqrt(pi) / sqrt(2 * x) * exp(-x) * total
     return besselk(nu, x)
 
