@@ -4,14 +4,14 @@ from __future__ import annotations
 
 from dataclasses import replace
 
-from sympy import S, oo
+from sympy import S, oo, sinc
 from sympy.logic.boolalg import And
 
 from ...closed_form import ClosedForm
 from ...problem import Problem
 from ...region import Region
 from . import circular, finite, whole
-from .changes import HalfLineChanges, split
+from .changes import HalfLineChanges, plain_sinc, split
 from .combined import added
 from .split import BROKEN
 
@@ -60,6 +60,8 @@ def _dispatch(problem: Problem) -> ClosedForm | None:
     f, x = problem.integrand, problem.variable
     if problem.half_line:
         return finite.handed_on(problem, f, x)
+    if f.has(sinc):
+        return plain_sinc(problem)
     if lower is -oo and upper is oo:
         answer = whole.on_line(problem)
         if answer is None and f.has(*BROKEN):

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from sympy import Add, Expr, Pow, S, Symbol, exp, log, preorder_traversal, sqrt
+from sympy import Add, Expr, Pow, S, Symbol, exp, log, preorder_traversal, sin, sinc, sqrt
 
 from ...closed_form import ClosedForm, Step
 from ...matching.monomials import monomials
@@ -11,7 +11,7 @@ from ..registry import MAX_DEPTH
 from .combined import added
 from .finite import fresh, handed_on
 from .split import BROKEN, broken
-from .whole import gaussian
+from .whole import gaussian, of_exponential
 
 
 class HalfLineChanges:
@@ -23,9 +23,13 @@ class HalfLineChanges:
         if not problem.half_line or problem.depth >= MAX_DEPTH:
             return None
         f, x = problem.integrand, problem.variable
+        if f.has(sinc):
+            return plain_sinc(problem)
         if f.has(*BROKEN):
             return split(problem)
-        return self._lognormal(problem, f, x) or self._root(problem, f, x)
+        if not f.has(exp):
+            return None
+        return self._lognormal(problem, f, x) or self._nested(problem, f, x) or self._root(problem, f, x)
 
     @staticmethod
     def _lognormal(problem: Problem, f: Expr, x: Symbol) -> ClosedForm | None:
@@ -36,6 +40,18 @@ class HalfLineChanges:
         inner = _logarithms_plain(f.xreplace({x: p}), p).xreplace({log(p): t}).xreplace({p: exp(t)}) * exp(t)
         answer = gaussian(problem, inner, t)
         return None if answer is None else added(problem, [(S.One, answer)], Step("substitution x = exp(t)"))
+
+    @staticmethod
+    def _nested(problem: Problem, f: Expr, x: Symbol) -> ClosedForm | None:
+        """``t = exp(x)`` on (1, oo) where an exponential stands in an exponent (Gompertz' law of mortality)."""
+        if not any(type(n) is exp and n.args[0].has(exp) and n.has_free(x) for n in preorder_traversal(f)):
+            return None
+        changed = of_exponential(f, x)
+        if changed is None:
+            return None
+        t, inner = changed
+        answer = handed_on(problem, inner, t, S.One)
+        return None if answer is None else added(problem, [(S.One, answer)], Step("substitution t = exp(x)"))
 
     @staticmethod
     def _root(problem: Problem, f: Expr, x: Symbol) -> ClosedForm | None:
@@ -88,6 +104,13 @@ def _logarithms_plain(f: Expr, p: Symbol) -> Expr:
         return node
 
     return f.replace(lambda node: type(node) is log and node.has_free(p), rule)
+
+
+def plain_sinc(problem: Problem) -> ClosedForm | None:
+    """sinc written out."""
+    return handed_on(
+        problem, problem.integrand.replace(sinc, lambda z: sin(z) / z), problem.variable, problem.lower, problem.upper
+    )
 
 
 def split(problem: Problem) -> ClosedForm | None:
