@@ -90,20 +90,21 @@ def test_quad_reaches_published_values(integrand, low, high, value):
 
 
 @pytest.mark.parametrize("integrand", [
-    1 / x, 1 / (x - 2), exp(x / 9), exp(-x) / x**2, x**2 * besselj(0, x), sin(x) ** 2 / x, sin(x) / x**2, x * sin(x)])
+    1 / x, 1 / (x - 2), exp(x / 9), exp(-x) / x**2, x**2 * besselj(0, x), sin(x) ** 2 / x, sin(x) / x**2,
+    x * sin(x)])
 def test_divergence_is_recognised(integrand):
     value, _, reliable, note = quad(integrand, (x, 0, oo))
     assert (value, reliable) == (mp.inf, True), note
 
 
-@pytest.mark.parametrize("integrand", [cos(exp(x)), exp(-x) * log(Abs(sin(x))), 1 / ((2 + cos(x)) * (1 + x**2))])
+@pytest.mark.parametrize("integrand", [
+    cos(exp(x)), exp(-x) * log(Abs(sin(x))), 1 / ((2 + cos(x)) * (1 + x**2))])
 def test_what_cannot_be_done_is_said(integrand):
     _, error, reliable, note = quad(integrand, (x, 0, oo), seconds=1)
     assert not reliable and note and error > 0
 
 
 @pytest.mark.parametrize(("expr", "value"), [
-    # p. 1 values from mpmath-independent identities
     (polylog(R(3, 2), -exp(3)) * 1, None),
     (dirichlet_eta(1), log(2)),
     (zeta(2, R(1, 2)), pi**2 / 2),

@@ -67,7 +67,7 @@ def _spherical(kind: str) -> Callable[[Number, Number], Number]:
     return value
 
 
-_LARGE = 30
+_LARGE = 60
 
 
 @lru_cache(maxsize=256)
@@ -118,7 +118,7 @@ def _y_series(n: int, z: Number) -> Number:
 def _integer_order(n: int, square: Number, logarithm: Number, sign: int) -> tuple[Number, Number]:
     """The finite sum of the singular part, and sum (logarithm - digammas/2)*(-sign*square)**k/(k!(n+k)!)."""
     finite = mp.fsum(mp.factorial(n - k - 1) / mp.factorial(k) * (sign * square) ** k for k in range(n))
-    term, digammas = 1 / mp.factorial(n), mp.digamma(1) + mp.digamma(n + 1)
+    term, digammas = 1 / mp.factorial(n), mp.fsum(mp.one / k for k in range(1, n + 1)) - 2 * mp.euler
     total, k = mp.zero, 0
     while True:
         change = term * (logarithm - digammas / 2)

@@ -34,7 +34,7 @@ class Integrand:
         return Integrand(expr, variable, self.point, self.deadline)
 
     def __call__(self, x: Number) -> Number:
-        if time.monotonic() > self.deadline:
+        if time.process_time() > self.deadline:
             raise OutOfTime
         arguments = self._arguments.get(mp.prec)
         if arguments is None:
@@ -65,7 +65,7 @@ class Integrand:
         dps = base + (2**octave if end else 0)
         negligible = self.size * mp.mpf(10) ** (-base - 5)
         before = None
-        for extra in (0, 2**octave + 4, 3 * 2**octave + 12, 8 * 2**octave + 40):
+        for extra in (0, 12, 2**octave + 16, 3 * 2**octave + 12, 8 * 2**octave + 40):
             try:
                 with mp.workdps(dps + extra):
                     value = self(end + side * distance)

@@ -63,7 +63,7 @@ def quad(f: Any, limits: Any, point: Mapping[Any, Any] | None = None, digits: in
     digits : int
         Digits asked for.
     seconds : float
-        Time budget.
+        Time budget, in processor time.
 
     Returns
     =======
@@ -89,7 +89,7 @@ def quad(f: Any, limits: Any, point: Mapping[Any, Any] | None = None, digits: in
     expr, x, low, high, values = checked(f, limits, point)
     if not seconds > 0:
         raise ValueError(f"seconds: a positive number is accepted, not {seconds!r}")
-    deadline = time.monotonic() + seconds
+    deadline = time.process_time() + seconds
     results: list[Piece] = []
     note = ""
     with mp.workdps(digits + 10):

@@ -7,7 +7,7 @@ from typing import Any
 
 from mpmath import mp
 from sympy import Expr, Symbol, sympify
-from sympy.logic.boolalg import Boolean, BooleanAtom
+from sympy.logic.boolalg import Boolean
 
 from .functions import Number
 from .numeric import Undefined, Unevaluated, evaluate
@@ -75,7 +75,7 @@ def verify(f: Any, limits: Any, value: Any, condition: Any = True, digits: int =
     given : relation or list of relations
         Further restrictions on the points.
     seconds : float
-        Time budget for each point.
+        Time budget for each point, in processor time.
 
     Returns
     =======
@@ -98,11 +98,11 @@ def verify(f: Any, limits: Any, value: Any, condition: Any = True, digits: int =
     False
     """
     expr, x, low, high = checked_limits(f, limits)
-    closed_form = sympify(value)
+    closed_form = value if isinstance(value, str) else sympify(value)
     if not isinstance(closed_form, Expr):
         raise TypeError(f"value: an expression is accepted, not {type(value).__name__}")
-    region = sympify(condition)
-    if not isinstance(region, (Boolean, BooleanAtom, bool)):
+    region = condition if isinstance(condition, str) else sympify(condition)
+    if not isinstance(region, (Boolean, bool)) or isinstance(region, Symbol):
         raise TypeError(f"condition: a Boolean is accepted, not {type(condition).__name__}")
     if not isinstance(digits, int) or isinstance(digits, bool) or not 1 <= digits <= 200:
         raise ValueError(f"digits: an integer from 1 to 200 is accepted, not {digits!r}")

@@ -105,7 +105,9 @@ def expansions_hold(parts: tuple[Expr, ...], g: Integrand) -> Number:
         for node in sorted(part.atoms(hankel1, hankel2), key=str):
             found = reader.growth(node.args[1])
             if found is not None:
-                least = asymptotic_from(evaluate(node.args[0], g.point))
+                # the precision is raised while digits are counted
+                with mp.workdps(mp.dps + 16):
+                    least = asymptotic_from(evaluate(node.args[0], g.point))
                 start = max(start, (least / abs(found[0])) ** (1 / mp.mpf(found[1])))
     return start
 
