@@ -15,8 +15,11 @@ from sympy import (
     Rational,
     S,
     dirichlet_eta,
+    euler,
+    factorial,
     ilcm,
     log,
+    pi,
     zeta,
 )
 
@@ -24,6 +27,9 @@ from ..gamma.laurent import Series, multiply, power_series
 from . import functions
 from .periodic import Periodic, periodic
 from .reflection import Row, derivative_at_zero, inverted, reflected
+
+# A closed form with more zeta functions than this helps nobody; a series of two terms may hold half as many.
+_MOST_FUNCTIONS = 24
 
 
 @dataclass(frozen=True)
@@ -116,14 +122,19 @@ class _Level:
         """Whether single terms have a pole at w = 1."""
         return bool(self._at_steps) or any(r.a is not S.One for r in self.alternating)
 
+    def _check(self, most: int) -> None:
+        if len(self._at_steps) + len(self.alternating) + len(self.lerch) > most:
+            raise functions.NoClosedForm("too many zeta functions")
+
     # -- values --------------------------------------------------------------------------------------------
 
     def at(self, w: Expr) -> Expr:
+        self._check(_MOST_FUNCTIONS)
         if w is S.One:
             return self._finite_part_at_one()
         if w.is_Integer and w.is_positive:
             return self._at_integer(int(w))
-        terms = [
+        terms = self._euler_numbers(w) or [
             (step, c, functions.value(S.One, w, a)) for step, a, c in self._at_steps[len(self.unit.zeta) :]
         ]
         terms += [
@@ -136,6 +147,17 @@ class _Level:
             if weights
         ]
         return Add(*unit, total)
+
+    def _euler_numbers(self, w: Expr) -> list[tuple[Rational, Expr, Expr]]:
+        """``zeta(w, 1/4) - zeta(w, 3/4)`` at an odd symbolic w, DLMF 25.11.40-type and 24.6-type."""
+        if not w.is_odd or not w.is_positive or len(self._at_steps) != 2 + len(self.unit.zeta):
+            return []
+        places = {a: (step, c) for (step, a), c in self.unit.hurwitz.items()}
+        quarter, other = places.get(Rational(1, 4)), places.get(Rational(3, 4))
+        if quarter is None or other is None or quarter[0] != other[0] or quarter[1] != -other[1]:
+            return []
+        value = S.NegativeOne ** ((w - 1) / 2) * euler(w - 1) * Pow(2, w - 1) * pi**w / factorial(w - 1)
+        return [(*quarter, value)]
 
     def _at_integer(self, w: int) -> Expr:
         """At a whole w > 1: reflection where it applies."""
@@ -175,6 +197,7 @@ class _Level:
     # -- series --------------------------------------------------------------------------------------------
 
     def laurent(self, w: Expr, rate: Expr, terms: int) -> Series:
+        self._check(_MOST_FUNCTIONS if terms == 1 else _MOST_FUNCTIONS // 2)
         at_pole = w is S.One
         first = -1 if at_pole and self.residue is not S.Zero else 0
         count = terms + 1 if at_pole and first == 0 else terms

@@ -90,9 +90,13 @@ def hurwitz_series(w: Expr, rate: Expr, a: Expr, terms: int) -> Series:
 
 def _stieltjes(n: int, a: Expr) -> Expr:
     if n == 0:
-        # Gauss' theorem, DLMF 5.4.19, for small denominators
-        return -digamma(a).expand(func=True) if a.is_Rational and a.q <= 12 else -digamma(a)
+        return minus_digamma(a)
     return stieltjes(n) if a is S.One else stieltjes(n, a)
+
+
+def minus_digamma(a: Expr) -> Expr:
+    """``-psi(a)``, by Gauss' theorem (DLMF 5.4.19) for rational a of small denominator."""
+    return -digamma(a).expand(func=True) if a.is_Rational and a.q <= 12 else -digamma(a)
 
 
 def _derivative(n: int, w: Expr, a: Expr) -> Expr:
@@ -181,4 +185,13 @@ def shifted(z: Expr, w: Expr, a: Expr, n: int) -> tuple[Expr, Expr]:
     return factor, rest
 
 
-__all__ = ["NoClosedForm", "alternating", "eta_series", "hurwitz_series", "series", "shifted", "value"]
+__all__ = [
+    "NoClosedForm",
+    "alternating",
+    "eta_series",
+    "hurwitz_series",
+    "minus_digamma",
+    "series",
+    "shifted",
+    "value",
+]

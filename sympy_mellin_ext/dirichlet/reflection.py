@@ -20,7 +20,6 @@ from sympy import (
     bernoulli,
     cos,
     cot,
-    digamma,
     exp,
     factorial,
     log,
@@ -152,7 +151,7 @@ def _single(z: Expr, w: int, a: Expr) -> Expr:
     if z is S.NegativeOne:
         return functions.alternating(Integer(w), a)
     if w == 1:
-        return -digamma(a).expand(func=True) if a.is_Rational else -digamma(a)
+        return functions.minus_digamma(a)
     if w == 2 and a.is_Rational and a.q == 4 and 0 < a < 1:
         # DLMF 25.11.40-type: Catalan's constant is (zeta(2, 1/4) - zeta(2, 3/4))/16
         return pi**2 + (8 if a.p == 1 else -8) * Catalan
