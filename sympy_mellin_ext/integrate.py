@@ -94,6 +94,8 @@ def try_strategies(
     conds = hints.get("conds", "piecewise")
     if conds not in ("piecewise", "separate", "none") or any(hints.get(name) for name in STOCK_METHODS):
         return Outcome()
+    if len(limits) > 1:
+        return _try_several(f, limits, Facts(relations(given)), conds)
     integral = _read(f, limits)
     if integral is None:
         return Outcome()
@@ -111,6 +113,27 @@ def try_strategies(
         return Outcome(answer, answer.as_piecewise(nested), question)
     bare = answer.value if conds == "none" else (answer.value, answer.condition)
     return Outcome(answer, bare, question)
+
+
+def _try_several(f: Any, limits: tuple[Any, ...], facts: Facts, conds: str) -> Outcome:
+    """Several variables; SymPy accepts no ``conds='separate'`` there, and nor do we."""
+    integrals = [_read(f, (limit,)) for limit in limits]
+    if conds == "separate" or any(i is None for i in integrals):
+        return Outcome()
+    try:
+        answer = _solve_several(f, [i[1:] for i in integrals if i is not None], facts)
+    except RecursionError:
+        answer = None
+    if answer is None:
+        return Outcome()
+    return Outcome(answer, answer.value if conds == "none" else answer.as_piecewise())
+
+
+def _solve_several(f: Expr, limits: list[tuple[Symbol, Expr, Expr]], facts: Facts) -> ClosedForm | None:
+    from .orthant import solve_several
+
+    answer = solve_several(f, limits, facts)
+    return None if answer is None else replace(answer, integrand=f, limits=tuple(limits), given=facts.given)
 
 
 def _read(f: Any, limits: tuple[Any, ...]) -> tuple[Expr, Symbol, Expr, Expr] | None:
@@ -154,6 +177,7 @@ def closed_form(f: Any, *limits: Any, given: Given = (), strict: bool = False) -
     f : Expr
         The integrand.
     *limits : tuple (x, lower, upper)
+        Several of them, innermost first, for an integral over an orthant or a simplex.
     given : relation or iterable of relations
         What the parameters are known to satisfy.
     strict : bool
@@ -179,9 +203,12 @@ def closed_form(f: Any, *limits: Any, given: Given = (), strict: bool = False) -
     ...     print(refusal.reason)
     diverges
     """
-    integral = _checked(f, limits)
     diagnosis = Diagnosis() if strict else None
-    answer = _solve(*integral, Facts(relations(given)), diagnosis)
+    if len(limits) > 1:
+        integrals = [_checked(f, (limit,)) for limit in limits]
+        answer = _solve_several(integrals[0][0], [i[1:] for i in integrals], Facts(relations(given)))
+    else:
+        answer = _solve(*_checked(f, limits), Facts(relations(given)), diagnosis)
     if answer is None and diagnosis is not None:
         raise diagnosis.refusal()
     return answer

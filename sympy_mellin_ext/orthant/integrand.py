@@ -127,6 +127,8 @@ class Product:
         """A base that stands only under a logarithm, ``base**eps``, as the kernel log(1 + z)."""
         result = self
         for eps, k in self.tilts:
+            if any(p.has(eps) for p in (self.coefficient, *self.powers)):
+                continue
             for base, p in self.sums:
                 if p == -eps and k == 1 and len(base) == 2:
                     log1p = Special("log(1+z)", LOG1P, base[1:], _log1p, "from memory: Gradshteyn-Ryzhik 4.293.3")
