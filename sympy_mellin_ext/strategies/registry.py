@@ -44,9 +44,10 @@ def _load() -> tuple[Strategy, ...]:
                 *master_theorem.STRATEGIES,
                 *exponential_series.STRATEGIES,
                 *abel_plana.STRATEGIES,
+                *ranges.STRATEGIES,  # before term-by-term integration of series over (0, 1)
                 *taylor.STRATEGIES,
                 *mellin_barnes.STRATEGIES,
-                *ranges.STRATEGIES,
+                *ranges.CHANGES,
             ]
             for name, strategy in plug_ins(STRATEGY_GROUP):
                 try:

@@ -80,5 +80,6 @@ def _dispatch(problem: Problem) -> ClosedForm | None:
     return finite.on_finite(problem)
 
 
-STRATEGIES = (Ranges(), HalfLineChanges())
-__all__ = ["STRATEGIES", "HalfLineChanges", "Ranges"]
+STRATEGIES = (Ranges(),)
+CHANGES = (HalfLineChanges(),)
+__all__ = ["CHANGES", "STRATEGIES", "HalfLineChanges", "Ranges"]

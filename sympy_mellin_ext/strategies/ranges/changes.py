@@ -62,12 +62,14 @@ class HalfLineChanges:
         ]  # fmt: skip
         if not roots or len({n.base for n in roots}) != 1:
             return None
+        if not any(type(n) is exp and n.args[0].has(roots[0].base) for n in preorder_traversal(f)):
+            return None
         parts = monomials(roots[0].base, x)
         if parts is None or len(parts) != 2 or not any(p.is_zero for _, p in parts):
             return None
         (c, p), (d, _) = parts if parts[1][1].is_zero else parts[::-1]
         facts = problem.facts
-        if facts.sign(c) != 1 or facts.sign(d) != 1 or not f.has(exp):
+        if facts.sign(c) != 1 or facts.sign(d) != 1:
             return None
         # u**2 = c*x**p + d with p > 0: x = ((u**2 - d)/c)**(1/p), dx = x*2*u/(p*(u**2 - d)) du
         if facts.sign(p) != 1:

@@ -9,6 +9,7 @@ from sympy import (
     Add,
     Dummy,
     Expr,
+    Mul,
     Poly,
     Pow,
     Rational,
@@ -36,6 +37,7 @@ from sympy import (
     pi,
     sin,
     sinh,
+    together,
     totient,
 )
 from sympy.logic.boolalg import And, Boolean
@@ -76,6 +78,8 @@ class UnitReader(Reader):
         if rule is not None and expr.has_free(self.x):
             changed = rule(*expr.args)
             return None if changed is None else self.read(changed)
+        if type(expr) is log and expr.has_free(self.x):
+            return self._logarithm(expr.args[0])
         if type(expr) in (acos, acosh, asech):
             return self._inverse_cosine(expr)
         return super().read(expr)
@@ -188,31 +192,69 @@ class UnitReader(Reader):
         )
         return None if kernel is None else [front.times(Draft(kernels=(kernel,)))]
 
+    # -- logarithms --------------------------------------------------------------------------------
+
+    def _logarithm(self, inner: Expr) -> Drafts | None:
+        """``log(inner)``: products of positive factors are sums, ``log(1 - x**r)`` is a kernel of its own."""
+        single = monomial(inner, self.x)
+        if single is not None:
+            return self._log_monomial(*single)
+        kind = type(inner)
+        if kind is Mul:
+            drafts: Drafts = []
+            for a in inner.args:
+                part = self._logarithm(a) if self.nonnegative(a) else None
+                if part is None:
+                    return None
+                drafts.extend(part)
+            return drafts
+        if kind is Pow and not inner.exp.has_free(self.x) and self.nonnegative(inner.base):
+            part = self._logarithm(inner.base)
+            return None if part is None else [d.scaled(inner.exp) for d in part]
+        if kind is exp and self.real(inner.args[0]):
+            return self.read(inner.args[0])
+        if kind is Add:
+            return self._log_sum(inner)
+        return None
+
+    def _log_monomial(self, c: Expr, p: Expr) -> Drafts | None:
+        if self.facts.sign(c) != 1:
+            return None
+        moving = [Draft(coefficient=p, logs=1)] if p is not S.Zero else []
+        return moving if c is S.One else [*moving, Draft(coefficient=log(c))]
+
     def _log_sum(self, inner: Add) -> Drafts | None:
         parts = monomials(inner, self.x)
-        if parts is not None and len(parts) == 2:
-            (c0, p0), (c1, p1) = parts
-            gap = self.facts.sign(p1 - p0)
-            if gap == -1:
-                (c0, p0), (c1, p1) = (c1, p1), (c0, p0)
-            if gap in (1, -1) and self.facts.sign(c0) == 1:
-                ratio = (p1 - p0).expand()
-                drafts: Drafts = []
-                if _opposite(c0, c1):
-                    drafts.append(Draft(kernels=(_unit_log(ratio),)))
-                else:
-                    kernel = self.kernel(
-                        "log1p", LOG1P, c1 / c0, ratio, "from memory: Gradshteyn-Ryzhik 4.293.3"
-                    )
-                    if kernel is None:
-                        return None
-                    drafts.append(Draft(kernels=(kernel,)))
-                if c0 is not S.One:
-                    drafts.append(Draft(coefficient=log(c0)))
-                if not p0.is_zero:
-                    drafts.append(Draft(coefficient=p0, logs=1))
-                return drafts
-        return super()._log_sum(inner)
+        if parts is None:
+            fraction = together(inner)
+            return self._logarithm(fraction) if type(fraction) is Mul else None
+        if len(parts) == 3:
+            return self._log_circle(parts)
+        if len(parts) != 2:
+            return None
+        (c0, p0), (c1, p1) = parts
+        gap = self.facts.sign(p1 - p0)
+        if gap == -1:
+            (c0, p0), (c1, p1) = (c1, p1), (c0, p0)
+        if gap not in (1, -1) or self.facts.sign(c0) != 1:
+            return None
+        ratio = (p1 - p0).expand()
+        if _opposite(c0, c1):
+            kernel: Kernel | None = _unit_log(ratio)
+        else:
+            kernel = self.kernel("log1p", LOG1P, c1 / c0, ratio, "from memory: Gradshteyn-Ryzhik 4.293.3")
+        front = self._log_monomial(c0, p0)
+        if kernel is None or front is None:
+            return None
+        return [Draft(kernels=(kernel,)), *front]
+
+    def _log_circle(self, parts: list[tuple[Expr, Expr]]) -> Drafts | None:
+        """Logarithms of cyclotomic polynomials: ``sum mu(n/d)*log(1 - y**d)``."""
+        found = self._circle(parts, S.One)
+        if found is None or self.facts.sign(found[0].coefficient) != 1:
+            return None
+        front = self._log_monomial(found[0].coefficient, found[0].power) or []
+        return [Draft(coefficient=k.arguments[0], kernels=(_unit_log(k.ratio),)) for k in found[0].kernels] + front
 
     # -- scales ------------------------------------------------------------------------------------
 
