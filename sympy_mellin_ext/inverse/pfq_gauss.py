@@ -140,9 +140,9 @@ def _half_step(a: Any, c: Any, sign: int, y: Symbol) -> Any:
         return ((1 + r) ** w - (1 - r) ** w) / (2 * w * r)
     shift = as_int(c - 2 * a)
     if shift == 0:
-        return 2 ** (2 * a - 1) * (1 + sqrt(1 - z)) ** (1 - 2 * a) / sqrt(1 - z)
+        return Integer(2) ** (2 * a - 1) * (1 + sqrt(1 - z)) ** (1 - 2 * a) / sqrt(1 - z)
     if shift == 1:
-        return 4**a * (1 + sqrt(1 - z)) ** (-2 * a)
+        return Integer(2) ** (2 * a) * (1 + sqrt(1 - z)) ** (-2 * a)
     return None
 
 

@@ -112,7 +112,7 @@ def _bessel_ik(a: Params, b: Params, c: Params, d: Params, w: Symbol) -> Any:
 
 
 def _bessel_k_square(a: Params, b: Params, c: Params, d: Params, w: Symbol) -> Any:
-    """DLMF 10.43.20 with equal orders."""
+    """Koelbig, J. Comput. Appl. Math. 62 (1995) 41, eq. (1), with equal orders."""
     p, nu = a[0], a[1] - a[0]
     if _same(a[2] - p + nu, c[0] - p - HALF):
         return 2 / sqrt(pi) * power(w, p) * bessel_k(nu, sqrt(w)) ** 2
@@ -120,7 +120,7 @@ def _bessel_k_square(a: Params, b: Params, c: Params, d: Params, w: Symbol) -> A
 
 
 def _bessel_kk(a: Params, b: Params, c: Params, d: Params, w: Symbol) -> Any:
-    """DLMF 10.43.20."""
+    """Koelbig, J. Comput. Appl. Math. 62 (1995) 41, eq. (1)."""
     p = (a[0] + a[1]) / 2
     if _same(a[2] + a[3] - 2 * p, c[0] - p, c[1] - p - HALF):
         x, s, t = sqrt(w), a[0] - p, a[2] - p
