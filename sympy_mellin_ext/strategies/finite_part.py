@@ -120,13 +120,14 @@ def converge(
     if any(piece.pole_order_inside for piece in pieces) and not poles_cancel(pieces, principal):
         return Divergence("diverges", True)
     region = Region(facts)
+    sharp = True  # a sector leaves out its boundary, where the integral may converge all the same
     conditional: dict[int, list[Expr]] = {1: [], -1: []}
     for piece in pieces:
         growth = piece.growth()
         if growth is None:
             return Divergence("growth")
         if growth.condition is not S.true:
-            region = region.holds(growth.condition)
+            region, sharp = region.holds(growth.condition), False
         if growth.positive is not None:
             region = region.positive(growth.positive)
         if growth.conditional is not None:
@@ -141,6 +142,8 @@ def converge(
         for exponent in found.survivors:
             region = region.positive(end * (real_part(exponent) + 1))
         edges.append(found)
+    if region.empty and not sharp:
+        return Divergence("empty region")
     if region.empty:
         return Divergence("diverges", True, _infinity(pieces, edges, conditional))
     return region, edges[0], edges[1]

@@ -97,6 +97,8 @@ def closed_form_of_pieces(
     if isinstance(outcome, Divergence):
         if outcome.proved:
             return problem.diverges("its behaviour at 0, at oo or at a pole between", outcome.infinity)
+        if outcome.reason == "empty region":
+            return problem.refuse(outcome.reason, "the conditions contradict one another")
         return problem.refuse(outcome.reason, "a kernel grows too fast, or cancels too much, for a Mellin transform")
     region, at_zero, at_infinity = outcome
     value = total_value(pieces)
