@@ -397,6 +397,9 @@ def sector(scale: Expr, lam: Rational) -> Boolean:
     """``abs(arg(scale)) < pi/2*lam`` in the plainest words."""
     if scale.is_extended_real:
         return scale > 0
+    above, below = scale.as_numer_denom()
+    if above.is_extended_real and below.is_extended_real:
+        return above * below > 0  # real where it is defined
     if lam == 1:
         return real_part(scale) > 0
     return Abs(arg(scale)) < pi * lam / 2

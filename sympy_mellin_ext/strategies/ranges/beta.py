@@ -157,19 +157,11 @@ def _value(term: BetaTerm) -> Expr:
     s, b, k, j = term.s, term.b, term.k, term.j
     for first, second, order in ((b, s, (j, k)), (s, b, (k, j))):
         # a whole exponent multiplies out: int x**(s+i-1)*log(x)**k = (-1)**k*k!/(s+i)**(k+1)
-        if (
-            first.is_Integer
-            and 0 < first <= _LONGEST_POLYNOMIAL
-            and order[0] == 0
-            and (order[1] or first == 1)
-        ):
+        if first.is_Integer and 0 < first <= _LONGEST_POLYNOMIAL and order[0] == 0 and (order[1] or first == 1):
             n = order[1]
             return term.coefficient * Add(
                 *(
-                    binomial(first - 1, i)
-                    * (-1) ** (i + n)
-                    * factorial(n)
-                    / ((second + i).expand()) ** (n + 1)
+                    binomial(first - 1, i) * (-1) ** (i + n) * factorial(n) / ((second + i).expand()) ** (n + 1)
                     for i in range(int(first))
                     if not (second + i).expand().is_zero
                 )

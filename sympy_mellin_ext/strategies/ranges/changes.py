@@ -76,22 +76,16 @@ class HalfLineChanges:
             return None
         base = roots[0].base
         u, z = fresh(problem, positive=True), fresh(problem, positive=True)
-        inner = f.replace(lambda n: n.is_Pow and n.base == base, lambda n: u ** (2 * n.exp)).xreplace(
-            {base: u**2}
-        )
+        inner = f.replace(lambda n: n.is_Pow and n.base == base, lambda n: u ** (2 * n.exp)).xreplace({base: u**2})
         inner = inner.xreplace({x: z}) * z
         # powers of x = z: (u**2 - d)**(1/p) as a power of a sum
-        inner = inner.replace(
-            lambda n: n.is_Pow and n.base == z, lambda n: ((u**2 - d) / c) ** (n.exp / p)
-        ).xreplace({z: ((u**2 - d) / c) ** (1 / p)})
+        inner = inner.replace(lambda n: n.is_Pow and n.base == z, lambda n: ((u**2 - d) / c) ** (n.exp / p)).xreplace(
+            {z: ((u**2 - d) / c) ** (1 / p)}
+        )
         inner = inner * (2 / p) * u * (u**2 - d) ** -1
         lower = sqrt(d)
         answer = handed_on(problem, inner, u, lower)
-        return (
-            None
-            if answer is None
-            else added(problem, [(S.One, answer)], Step(f"substitution u = sqrt({base})"))
-        )
+        return None if answer is None else added(problem, [(S.One, answer)], Step(f"substitution u = sqrt({base})"))
 
 
 def _logarithms_plain(f: Expr, p: Symbol) -> Expr:

@@ -254,9 +254,7 @@ def _joined(expr: Expr) -> Expr:
             return Pow(_over_one(node.base), node.exp)
         return log(_over_one(node.args[0])) if type(node) is log else node
 
-    return expr.replace(
-        lambda node: type(node) is log or (type(node) is Pow and type(node.base) is Add), rule
-    )
+    return expr.replace(lambda node: type(node) is log or (type(node) is Pow and type(node.base) is Add), rule)
 
 
 def _over_one(expr: Expr) -> Expr:

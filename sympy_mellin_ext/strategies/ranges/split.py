@@ -79,9 +79,7 @@ def roots(g: Expr, x: Symbol, lower: Expr, facts: Facts) -> list[Expr]:
     return [(x - g / slope).expand()]
 
 
-def broken(
-    f: Expr, x: Symbol, lower: Expr, upper: Expr, facts: Facts
-) -> list[tuple[Expr, Expr, Expr]] | None:
+def broken(f: Expr, x: Symbol, lower: Expr, upper: Expr, facts: Facts) -> list[tuple[Expr, Expr, Expr]] | None:
     """Parts (integrand, lower, upper) without broken nodes, or None where the order is not known."""
     try:
         gaps = list(dict.fromkeys(differences(f, x)))
@@ -91,11 +89,7 @@ def broken(
         if len(inside) > _MOST_BREAKS:
             return None
         edges = [lower, *inside, upper]
-        return [
-            (_plain(f, x, a, b, facts), a, b)
-            for a, b in itertools.pairwise(edges)
-            if _order(a, b, facts) != 0
-        ]
+        return [(_plain(f, x, a, b, facts), a, b) for a, b in itertools.pairwise(edges) if _order(a, b, facts) != 0]
     except Unsplit:
         return None
 

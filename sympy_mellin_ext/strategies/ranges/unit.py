@@ -17,13 +17,27 @@ from sympy import (
     Pow,
     Rational,
     S,
+    Shi,
+    Si,
     Symbol,
+    asin,
+    asinh,
+    atan,
+    atanh,
     besseli,
     besselj,
+    cos,
+    cosh,
+    erf,
+    erfi,
     exp,
     gamma,
     hyper,
+    log,
     meijerg,
+    sin,
+    sinh,
+    sqrt,
 )
 from sympy.logic.boolalg import Boolean
 
@@ -138,6 +152,7 @@ def _sum(problem: Problem, terms: Sequence[_Term]) -> ClosedForm | None:
         if len(terms) == 1:
             return problem.diverges("at 0 or at 1")
         return problem.refuse("diverges", "the conditions contradict one another")
+    limits = [(where, _replaced(total, where, pairs)) for where, pairs in special.items()]
     source = _SERIES_SOURCE if others else _BETA_SOURCE
     sources = [k.source for t in others for k in t.foreign if k.source]
     return ClosedForm(
@@ -147,7 +162,7 @@ def _sum(problem: Problem, terms: Sequence[_Term]) -> ClosedForm | None:
         NAME,
         (Step("terms integrated over (0, 1)", source, total),),
         tuple(dict.fromkeys([*sources, source])),
-        tuple((where, _replaced(total, where, pairs)) for where, pairs in special.items()),
+        tuple((where, limit) for where, limit in limits if not limit.has(*BAD)),
     )
 
 
@@ -275,8 +290,7 @@ def _beta_terms(term: _Term, facts: Facts) -> tuple[Expr, list[BetaTerm]] | None
     step = Rational(1, top)
     start = (term.power + 1) / ratio
     found = [
-        BetaTerm(front * c, start + int(m) * step, exponent + 1, term.logs, j)
-        for (m,), c in sorted(polynomial.terms())
+        BetaTerm(front * c, start + int(m) * step, exponent + 1, term.logs, j) for (m,), c in sorted(polynomial.terms())
     ]
     return ratio, found
 
@@ -421,36 +435,53 @@ def _series_function(
     if known == -1:
         f = named_pfq(upper, lower, argument)
         return (plain if f is None else f), True
-    if not argument.is_real:
+    c, symbol, degree = _monomial_scale(argument)
+    if c is None or (degree == 2 and not symbol.is_real):
         return plain, True
     y = Dummy("y", positive=True)
-    f = named_pfq(upper, lower, -y)
-    if f is None or not all(type(node) in _ENTIRE for node in f.atoms(Function)):
+    if degree == 1:
+        # exp, log and sqrt of 1 + y continue to y < 0 as they stand
+        f = named_pfq(upper, lower, -y)
+        if f is None or not all(type(node) in _CONTINUED for node in f.atoms(Function)):
+            return plain, True
+        if not all(_continues(node, y) for node in f.atoms(Pow)) or (f.has(log) and not symbol.is_real):
+            return plain, True
+        return put(f, y, S.One, -argument, S.One), f.subs(y, 0) == 1
+    # c*symbol**2: the root of y = abs(c)*symbol**2 may have either sign, for the series is one in y
+    f = named_pfq(upper, lower, y if c.is_positive else -y)
+    if f is None or not all(type(node) in _EVEN for node in f.atoms(Function)):
         return plain, True
-    if f.subs(y, 0) == 1:
-        return _at(f, y, -argument), True
-    c, degree = _monomial_scale(argument)
-    if c is None or degree != 1 or any(not n.exp.is_Integer for n in f.atoms(Pow) if n.base == y):
+    if any(not n.args[0].is_Integer for n in f.atoms(besselj, besseli)):
         return plain, True
-    return _at(f, y, -argument), False
+    root = Dummy("t", positive=True)
+    form = put(f, y, S.One, root**2, S.One)
+    smooth = form.subs(root, 0) == 1
+    return shortened(form.xreplace({root: sqrt(c if c.is_positive else -c) * symbol})), smooth
 
 
-# Functions whose formula in y > 0 continues to y < 0 as it stands.
-_ENTIRE = (exp, besselj, besseli)
+_CONTINUED = (exp, log)
+_EVEN = (exp, log, sin, cos, sinh, cosh, Si, Shi, erf, erfi, atan, atanh, asin, asinh, besselj, besseli)
 
 
-def _at(f: Expr, y: Symbol, argument: Expr) -> Expr:
-    return put(f, y, S.One, argument, S.One)
+def _continues(node: Pow, y: Symbol) -> bool:
+    """Integer powers of y, and powers of 1 + y, which is positive."""
+    base, exponent = node.args
+    if not node.has(y) or base is S.Exp1:
+        return True
+    if base == y:
+        return bool(exponent.is_Integer)
+    return base == 1 + y and bool(exponent.is_real)
 
 
-def _monomial_scale(argument: Expr) -> tuple[Expr | None, Expr]:
-    """``argument = c*symbol**degree`` with c non-zero and one symbol of unknown sign."""
+def _monomial_scale(argument: Expr) -> tuple[Expr | None, Expr, int]:
+    """``argument = c*symbol**degree`` with real c != 0 and one symbol of unknown sign, degree 1 or 2."""
     unknown = [a for a in argument.free_symbols if not a.is_positive]
-    if len(unknown) != 1:
-        return None, S.Zero
-    c, rest = argument.as_independent(unknown[0], as_Add=False)
-    base, degree = rest.as_base_exp()
-    return (c, degree) if base == unknown[0] and c.is_nonzero else (None, S.Zero)
+    if len(unknown) == 1:
+        c, rest = argument.as_independent(unknown[0], as_Add=False)
+        base, degree = rest.as_base_exp()
+        if base == unknown[0] and degree in (1, 2) and (c.is_positive or c.is_negative):
+            return c, base, int(degree)
+    return None, S.Zero, 0
 
 
 def _short(upper: Sequence[Expr], lower: Sequence[Expr]) -> tuple[list[Expr], list[Expr]]:

@@ -187,9 +187,7 @@ class UnitReader(Reader):
         sign0, sign1 = self.facts.sign(c0), self.facts.sign(c1)
         if sign0 is None or sign1 is None or sign0 * sign1 != -1:
             return super()._binomial_power(parts, exponent)
-        kernel = self.kernel(
-            "power", power_transform(-exponent), c1 / c0, ratio, "DLMF 5.12.3", (-exponent,)
-        )
+        kernel = self.kernel("power", power_transform(-exponent), c1 / c0, ratio, "DLMF 5.12.3", (-exponent,))
         return None if kernel is None else [front.times(Draft(kernels=(kernel,)))]
 
     # -- logarithms --------------------------------------------------------------------------------
