@@ -17,15 +17,17 @@ from dataclasses import dataclass, replace
 from fractions import Fraction
 from itertools import combinations, islice
 
-from sympy import Abs, Dummy, Expr, ImmutableDenseMatrix, Matrix, Mul, Pow, S, gamma, sign
+from sympy import Dummy, Expr, ImmutableDenseMatrix, Matrix, Mul, Pow, S, gamma, hyper, meijerg
+from sympy.core.sorting import default_sort_key
 from sympy.logic.boolalg import Boolean
 
 from ..closed_form import Step
 from ..gamma.product import Factor, cancel
 from ..gamma.shortest import collect_powers, positive_power, shortest_quotient
 from ..inverse import inverse_mellin
+from ..inverse.signature import normalise
 from ..matching.reader import sector
-from ..region import Facts, project, real_part
+from ..region import Facts, Region, project, real_part
 from ..strategies.tidy import tidy
 from .integrand import Product
 from .linear import fraction, rational, reduced
@@ -251,8 +253,11 @@ def _projected(
 # -- values --------------------------------------------------------------------------------------------------
 
 
-def contour(product: Product, facts: Facts) -> Outcome | None:
-    """The integral of a product over the orthant by its Mellin variables; None where the index is too high."""
+def contour(product: Product, facts: Facts, condition: Boolean | None = None) -> Outcome | None:
+    """The integral of a product over the orthant by its Mellin variables; None where the index is too high.
+
+    ``condition``: where it is known to converge, instead of the region of absolute convergence.
+    """
     if product.index < 0:
         return None
     if not product.rational():
@@ -260,19 +265,19 @@ def contour(product: Product, facts: Facts) -> Outcome | None:
     system = System.of(product, facts)
     if system is None:
         return None
-    region = region_of(product, facts)
+    region = region_of(product, facts) if condition is None else ([], [condition])
     if region is None:
         return None
     for solution, determinant, free in islice(system.solutions(), _MOST_CHOICES):
         gammas = [(g.at(solution), e) for g, e in system.gammas]
         scales = [(c, s.at(solution)) for c, s in system.scales]
         constant = product.coefficient * system.constant / rational(determinant)
-        found = _value(constant, gammas, scales, list(free), facts)
+        found = _value(constant, gammas, scales, list(free), Region(facts).positive(*region[0]).holds(*region[1]))
         if found is None:
             continue
         value, lemmas = found
         if value.has(*BAD):
-            return None
+            continue
         return Outcome(
             value,
             tuple(region[0]),
@@ -303,7 +308,7 @@ def _told(
 
 
 def _value(
-    constant: Expr, gammas: Gammas, scales: Scales, free: list[int], facts: Facts
+    constant: Expr, gammas: Gammas, scales: Scales, free: list[int], region: Region
 ) -> tuple[Expr, list[Step]] | None:
     steps: list[Step] = []
     while len(free) > 1:
@@ -335,14 +340,35 @@ def _value(
     z = collect_powers(z)
     if not rows:
         return None
-    value = inverse_mellin(rows, z, facts)
+    value = inverse_mellin(rows, z, region.facts)
     if value is None:
         return None
+    if fragile(value, region):
+        value = _meijer(rows, z) or value
     up = [a for a, e in outside if e > 0]
     down = [a for a, e in outside if e < 0]
     value = tidy(collect_powers(constant * shortest_quotient(up, down)) * value).xreplace(back)
     steps.append(Step("one contour integral left", "DLMF 16.17.1", value))
     return value, steps
+
+
+def fragile(value: Expr, region: Region) -> bool:
+    """Whether a sum of hypergeometric series has lower parameters that may be 0, -1, ... in the region."""
+    return any(
+        not b.is_number and region.sign(real_part(b)) != 1
+        for h in sorted(value.atoms(hyper), key=default_sort_key)
+        for b in h.bq
+    )
+
+
+def _meijer(rows: Sequence[Factor], z: Expr) -> Expr | None:
+    """The contour integral as Meijer's G, which has no removable singularities (DLMF 16.17.1)."""
+    norm = normalise(rows)
+    if norm.signature.lam <= 0:
+        return None
+    left, right, left_den, right_den = norm.signature
+    argument = norm.scale * positive_power(z, norm.power)
+    return norm.constant * meijerg(([1 - x for x in right], list(left_den)), (list(left), [1 - x for x in right_den]), argument)
 
 
 def _closed(constant: Expr, gammas: Gammas, scales: Scales) -> Expr:
@@ -447,4 +473,4 @@ def _symbolic(product: Product, facts: Facts) -> Outcome | None:
     return Outcome(value, tuple(positive), tuple(system.booleans), (step,), (*system.sources, _SOURCE))
 
 
-__all__ = ["Abs", "System", "contour", "region_of", "sign"]
+__all__ = ["System", "contour", "fragile", "region_of"]

@@ -4,7 +4,8 @@ Under ``x_i -> lambda**w_i * x_i`` every factor must stay as it is up to a power
 functions of one sum A which is homogeneous (Liouville's and Dirichlet's integrals; Schwinger's and Feynman's
 parameters read backwards).  By Tonelli the reduced integral of absolute values converges iff the first one does.
 
-Sources: DLMF 5.14.1-2 (Dirichlet, Liouville), 5.9.1, 5.12.3.
+Sources: E. T. Whittaker and G. N. Watson, A Course of Modern Analysis (1927), section 12.5 (Dirichlet, Liouville);
+DLMF 5.9.1, 5.12.3, 5.14.1.
 """
 from __future__ import annotations
 
@@ -27,6 +28,7 @@ from .polynomial import Monomial, Polynomial, as_expr, collected, product
 
 Direction = tuple[Fraction, ...]
 _MOST_DIRECTIONS = 24
+LIOUVILLE = "Whittaker and Watson, A Course of Modern Analysis (1927), section 12.5"
 
 
 @dataclass(frozen=True)
@@ -178,8 +180,8 @@ def _single(
     """One factor scales."""
     name, data, parts = item
     booleans: list[Boolean] = []
-    if name == "sum":
-        p: Expr = data  # type: ignore[assignment]
+    if isinstance(data, Expr):
+        p = data
         if len(parts) != 2:
             return None
         (d0, low), (d1, high) = sorted(parts.items(), key=lambda part: part[0])
@@ -200,7 +202,7 @@ def _single(
         return None
     beta = (power / m).expand()
     size = m if m.is_positive else -m
-    if name == "exp":
+    if data is None:
         if len(inner) == 1:
             c = inner[0].coefficient
             if facts.sign(c) is None and c.is_extended_real:
@@ -308,8 +310,8 @@ def _liouville(
     answer = attempt(Problem(Mul(*factors), r, facts=facts, depth=1))
     if not isinstance(answer, ClosedForm):
         return None
-    step = Step(f"all factors are functions of one sum along the direction {told}", "Liouville, DLMF 5.14.2", answer.value)
-    return Reduction(left, others, answer.value, (), (answer.condition,), step, "DLMF 5.14.2")
+    step = Step(f"all factors are functions of one sum along the direction {told}", LIOUVILLE, answer.value)
+    return Reduction(left, others, answer.value, (), (answer.condition,), step, LIOUVILLE)
 
 
 def _multiple(inner: Polynomial, unit: Polynomial, k: Expr, powers: dict[Expr, Polynomial]) -> Expr | None:

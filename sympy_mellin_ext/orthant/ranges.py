@@ -1,6 +1,6 @@
 """Ranges of several variables that are an orthant, or a simplex that Cheng-Wu's substitution turns into one.
 
-Sources: DLMF 5.14.1 (Dirichlet's integral), 5.14.2 (Liouville); H. Cheng and T. T. Wu, Expanding Protons (1987),
+Sources: DLMF 5.14.1-2 and Whittaker and Watson (1927), section 12.5 (Dirichlet, Liouville); H. Cheng and T. T. Wu, Expanding Protons (1987),
 for the freedom in the argument of the delta function.
 """
 from __future__ import annotations
@@ -15,6 +15,7 @@ from ..closed_form import ClosedForm, Step
 from ..problem import Problem
 from ..region import Facts, Region, real_part
 from ..strategies.registry import attempt
+from .elimination import LIOUVILLE
 from .polynomial import read_monomial, read_polynomial
 from .strategy import NAME, integrate_orthant
 
@@ -48,7 +49,7 @@ def solve_several(f: Expr, limits: Limits, facts: Facts) -> ClosedForm | None:
             return None
         answer = _delta(Mul(*(a for a in Mul.make_args(inside) if a is not deltas[0])), deltas[0].args[0], names, uppers, facts)
     elif all(b is oo for b in uppers):
-        answer = integrate_orthant(inside, names, facts)
+        answer = integrate_orthant(inside, names, facts) or _dirichlet(inside, names, oo, facts)
     else:
         answer = _simplex(inside, names, uppers, facts)
     if answer is None or answer.value.has(*names) or answer.condition.has(*names):
@@ -69,7 +70,7 @@ def _simplex(f: Expr, names: Sequence[Symbol], uppers: Sequence[Expr], facts: Fa
     moved = {x: Pow(u / k, 1 / p) for x, u, (k, p) in zip(names, t, weights, strict=True)}
     front = Mul(*(Pow(k, -1 / p) / p for k, p in weights))
     g = _split_powers(f.xreplace(moved)) * Mul(*(Pow(u, 1 / p - 1) for u, (_, p) in zip(t, weights, strict=True)))
-    answer = _dirichlet(g, t, facts) or _projective(g, t, [*t], facts, inside=True)
+    answer = _dirichlet(g, t, S.One, facts) or _projective(g, t, [*t], facts, inside=True)
     return None if answer is None else answer.times(front)
 
 
@@ -116,8 +117,8 @@ def _split_powers(f: Expr) -> Expr:
     return f.replace(lambda a: a.is_Pow and a.base.is_Mul, lambda a: Mul(*(Pow(b, a.exp) for b in a.base.args)))
 
 
-def _dirichlet(f: Expr, t: Sequence[Symbol], facts: Facts) -> ClosedForm | None:
-    """``prod t_i**(a_i - 1) * g(sum t_i)``: Liouville's extension of Dirichlet's integral."""
+def _dirichlet(f: Expr, t: Sequence[Symbol], upper: Expr, facts: Facts) -> ClosedForm | None:
+    """``prod t_i**(a_i - 1) * g(sum t_i)`` over ``sum t_i < upper``: Liouville's extension of Dirichlet's integral."""
     powers = [S.Zero] * len(t)
     others: list[Expr] = []
     coefficient: Expr = S.One
@@ -134,20 +135,20 @@ def _dirichlet(f: Expr, t: Sequence[Symbol], facts: Facts) -> ClosedForm | None:
         return None
     alphas = [(p + 1).expand() for p in powers]
     total = Add(*alphas).expand()
-    inner = attempt(Problem(tau ** (total - 1) * g, tau, S.Zero, S.One, facts, depth=1))
+    inner = attempt(Problem(tau ** (total - 1) * g, tau, S.Zero, upper, facts, depth=1))
     if inner is None:
         return None
     region = Region(facts).positive(*(real_part(a) for a in alphas)).holds(inner.condition)
     if region.empty:
         return None
     front = coefficient * Mul(*(gamma(a) for a in alphas)) / gamma(total)
-    step = Step("Dirichlet's integral: a function of the sum of the variables", "DLMF 5.14.2")
+    step = Step("Dirichlet's integral: a function of the sum of the variables", LIOUVILLE)
     answer = inner.times(front)
     from ..strategies.tidy import tidy
 
     return replace(
         answer, value=tidy(answer.value), condition=region.to_boolean(), strip=None, strategy=NAME,
-        steps=(step, *inner.steps), sources=("DLMF 5.14.1", "DLMF 5.14.2", *inner.sources),
+        steps=(step, *inner.steps), sources=(LIOUVILLE, *inner.sources),
     )  # fmt: skip
 
 

@@ -144,14 +144,17 @@ class Reader:
         return [replace(self.one, coefficient=coefficient, exponent=collected(monomials), specials=tuple(specials))]
 
     def argument(self, expr: Expr) -> tuple[Polynomial, Expr] | None:
-        """``(poly, r)`` with expr = poly**r, all coefficients of poly positive."""
+        """``(poly, r)`` with expr = poly**r, all coefficients of poly positive.
+
+        A monomial in front joins the sum: x*y/(x + y) is (1/x + 1/y)**(-1).
+        """
         poly = read_polynomial(expr, self.variables)
         r: Expr = S.One
         if poly is None:
             outside: list[Expr] = []
             inside: Polynomial | None = None
             for a in Mul.make_args(expr):
-                if a.is_Pow and a.base.is_Add and inside is None and a.exp.is_Rational and a.exp > 0:
+                if a.is_Pow and a.base.is_Add and inside is None and a.exp.is_Rational:
                     inside, r = read_polynomial(a.base, self.variables), a.exp
                     if inside is None:
                         return None
@@ -254,7 +257,7 @@ def _special(
         if whole is not None and len(poly) == 1:
             return Special(name, product, whole, build, source, domain)
     turned = product.rescaled(Rational(1) / r)
-    turned = replace(turned, constant=turned.constant / r)
+    turned = replace(turned, constant=turned.constant / abs(r))
     return Special(name, turned, poly, lambda z: build(Pow(z, r)), source, domain)
 
 

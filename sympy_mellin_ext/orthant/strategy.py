@@ -12,9 +12,10 @@ from ..problem import Problem
 from ..region import Facts, Region
 from ..strategies.registry import attempt
 from ..strategies.tidy import tidy
-from .contour import contour
+from .contour import contour, fragile
 from .elimination import reductions
 from .integrand import Product
+from .order import region_in_order
 from .outcome import BAD, Outcome
 from .polynomial import whole_power
 from .reader import read_products
@@ -72,12 +73,16 @@ class Search:
         answer = attempt(Problem(product.as_expr((x,)), x, facts=self.facts, depth=1))
         if answer is None:
             return None
+        if fragile(answer.value, Region(self.facts).holds(answer.condition)):
+            found = contour(product, self.facts)
+            if found is not None:
+                return found
         return Outcome(answer.value, (), (answer.condition,), answer.steps, answer.sources, answer.special)
 
     def multiplied_out(self, product: Product, variables: tuple[Symbol, ...]) -> Outcome | None:
         """A whole positive power of a sum, term by term."""
         for base, p in product.sums:
-            if not (p.is_Integer and p.is_negative) or not product.positive(self.facts):
+            if not (p.is_Integer and p.is_negative):
                 continue
             power = whole_power(base, int(-p))
             if power is None:
@@ -92,6 +97,14 @@ class Search:
                 parts.append(part)
             return added(parts)
         return None
+
+
+def _in_order(product: Product, facts: Facts) -> Outcome | None:
+    """Oscillating kernels at index 0: the wider region of the iterated integral, in the order given."""
+    if product.tame() or product.index != 0 or product.tilts:
+        return None
+    condition = region_in_order(product, facts)
+    return None if condition is None else contour(product, facts, condition)
 
 
 def added(parts: Sequence[Outcome]) -> Outcome:
@@ -157,7 +170,7 @@ def integrate_orthant(f: Expr, variables: Sequence[Symbol], facts: Facts) -> Clo
     search = Search(facts)
     parts = []
     for product in products:
-        found = search.solve(product, tuple(names))
+        found = _in_order(product, facts) or search.solve(product, tuple(names))
         found = None if found is None else _untilted(found, product.tilts)
         if found is None:
             return None
