@@ -85,7 +85,13 @@ class HalfLineChanges:
         inner = inner * (2 / p) * u * (u**2 - d) ** -1
         lower = sqrt(d)
         answer = handed_on(problem, inner, u, lower)
-        return None if answer is None else added(problem, [(S.One, answer)], Step(f"substitution u = sqrt({base})"))
+        return (
+            None
+            if answer is None
+            else added(
+                problem, [(S.One, answer)], Step("substitution u = " + str(sqrt(base.xreplace({x: Symbol(x.name)}))))
+            )
+        )
 
 
 def _logarithms_plain(f: Expr, p: Symbol) -> Expr:

@@ -74,5 +74,8 @@ def replaced(answer: ClosedForm, old: Symbol, new: Expr, extra: Boolean, facts: 
         condition=condition,
         strip=None if strip is None else (strip[0].xreplace({old: new}), strip[1].xreplace({old: new})),
         special=tuple((w.xreplace({old: new}), v.xreplace({old: new})) for w, v in answer.special),
-        steps=tuple(replace(s, result=None) if s.result is not None and s.result.has(old) else s for s in answer.steps),
+        steps=tuple(
+            replace(step, result=None) if step.result is not None and step.formula.has(old) else step
+            for step in answer.steps
+        ),
     )

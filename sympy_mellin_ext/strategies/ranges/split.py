@@ -149,10 +149,10 @@ def _plain(f: Expr, x: Symbol, a: Expr, b: Expr, facts: Facts) -> Expr:
         best = args[0]
         for other in args[1:]:
             gap = other - best
-            s = _sign(gap, x, a, b, facts) if gap.has_free(x) else facts.sign(gap)
-            if s is None:
+            turn = _sign(gap, x, a, b, facts) if gap.has_free(x) else facts.sign(gap)
+            if turn is None:
                 raise Unsplit
-            if (s > 0) == (kind is Max):
+            if (turn > 0) == (kind is Max):
                 best = other
         return best
     if kind is Piecewise:

@@ -153,7 +153,7 @@ def gaussian(problem: Problem, f: Expr, x: Symbol) -> ClosedForm | None:
 def _error_function(
     problem: Problem, polynomial: list[Expr], a: Expr, b: Expr, c: Expr, error: Expr, x: Symbol
 ) -> ClosedForm | None:
-    """A normal density times erf(m*x + h): a derivative in h, then integrated from its zero; moments as derivatives in b.
+    """A normal density times erf(m*x + h): integrated derivative in h; moments are derivatives in b.
 
     ``int exp(-a*x**2 + b*x)*erf(m*x + h) dx = sqrt(pi/a)*exp(b**2/(4a))*erf((h + m*b/(2a))/sqrt(1 + m**2/a))``
     (DLMF 7.2.1 with 5.9.1).
