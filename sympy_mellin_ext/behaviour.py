@@ -39,9 +39,13 @@ class Component(NamedTuple):
 
 @dataclass
 class Convergence:
-    """The region of convergence, and the exponents e that count at each end: ``end*(e + 1) > 0``."""
+    """The region of convergence, and the exponents e that count at each end: ``end*(e + 1) > 0``.
+
+    ``exact`` is False where a component may be smaller than stated, so that nothing is proved outside.
+    """
 
     region: Region
+    exact: bool = True
     at_zero: list[Expr] = field(default_factory=list)
     at_infinity: list[Expr] = field(default_factory=list)
 
@@ -87,7 +91,7 @@ def _exponential(kernel: Kernel) -> list[Component] | None:
     exponent = ratio * (gammas.kappa(S.Zero) + S.Half) / delta
     power = ratio / delta
     if wave is None:
-        if kernel.inside and not gammas.scale.is_extended_real or not size.is_extended_real:
+        if (kernel.inside and not gammas.scale.is_extended_real) or not size.is_extended_real:
             rate = real_part(size) if turned == 0 else real_part(size * exp(I * turned))
             return [Component(exponent, power, rate, S.Zero, kernel.name != "exp" and kernel.inside)]
         angle: Expr = S.Zero
@@ -123,7 +127,7 @@ def converge_product(term: Term, facts: Facts) -> Convergence | str:
     Returns
     -------
     Convergence or str
-        The exact region up to edges of measure zero, or 'growth' or 'diverges'.
+        The exact region up to edges of measure zero; or 'growth', 'diverges', 'divergence' (proved).
 
     Examples
     --------
@@ -139,18 +143,27 @@ def converge_product(term: Term, facts: Facts) -> Convergence | str:
     """
     result = Convergence(Region(facts))
     reason = restrict_kernels(result, term, facts)
-    if reason is not None:
+    if reason is None and not result.region.empty:
+        return result
+    if reason == "growth":
         return reason
-    return "diverges" if result.region.empty else result
+    return "divergence" if result.exact else "diverges"
 
 
-def restrict_kernels(result: Convergence, term: Term, facts: Facts, powers: bool = True) -> str | None:
+def restrict_kernels(
+    result: Convergence,
+    term: Term,
+    facts: Facts,
+    powers: bool = True,
+    ends: tuple[int, ...] = (ZERO_END, INFINITE_END),
+) -> str | None:
     """Add what one term demands; without ``powers`` only what a sum of terms cannot cancel."""
     for kernel in term.kernels:
         # an exponential states its own condition through its rate, and only where nothing stronger decays
         if kernel.condition is not S.true and (kernel.name != "exp" or kernel.wave is not None):
             result.region = result.region.holds(kernel.condition)
-    for end in (ZERO_END, INFINITE_END):
+            result.exact = False
+    for end in ends:
         lists = [components(kernel, end) for kernel in term.kernels]
         known = [l for l in lists if l is not None]
         if len(known) < len(lists):
@@ -196,6 +209,9 @@ def _restrict(
         if frequency is not S.Zero:
             bound = r
             break
+    if bound is S.Zero and any(p.frequency is not S.Zero for p in parts):
+        # phases cancel, and the amplitude may vanish
+        result.exact = False
     theta = Add(*(p.exponent for p in parts))
     # the component counts like a pure power with this exponent
     exponent = power - theta + bound if end == ZERO_END else power + theta - bound
@@ -236,7 +252,7 @@ def _finite_points(result: Convergence, kernels: Sequence[Kernel]) -> str | None
         if gammas.delta != 0:
             continue
         excess = (abs(kernel.wave.angle) if kernel.wave is not None else S.Zero) - pi * gammas.lam / 2
-        if kernel.inside and kernel.wave is not None or excess.is_negative:
+        if (kernel.inside and kernel.wave is not None) or excess.is_negative:
             continue
         if not excess.is_zero:
             return "growth"

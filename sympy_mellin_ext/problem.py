@@ -41,8 +41,11 @@ class Diagnosis:
 
     def refusal(self) -> Refusal:
         """The most telling finding: a later strategy that got further outranks 'no kernel'."""
-        ranked = [f for f in self.findings if f.reason != "no kernel"] or self.findings
-        return ranked[0] if ranked else Refusal("no kernel", "no strategy recognises the integrand")
+        for vague in (("no kernel", "too many kernels"), ("no kernel",), ()):
+            ranked = [f for f in self.findings if f.reason not in vague]
+            if ranked:
+                return ranked[0]
+        return Refusal("no kernel", "no strategy recognises the integrand")
 
 
 @dataclass(frozen=True)

@@ -8,6 +8,8 @@ from __future__ import annotations
 
 from sympy import (
     Add,
+    Chi,
+    Ci,
     Ei,
     Expr,
     I,
@@ -15,6 +17,8 @@ from sympy import (
     Piecewise,
     Pow,
     S,
+    Shi,
+    Si,
     Symbol,
     acos,
     acosh,
@@ -36,6 +40,8 @@ from sympy import (
     exp,
     expint,
     fraction,
+    fresnelc,
+    fresnels,
     hyper,
     log,
     lowergamma,
@@ -51,8 +57,8 @@ from sympy import (
 # Open interval of arg/pi; None: not known.
 Interval = tuple[Expr, Expr] | None
 
-_ENTIRE = (exp, erf, erfc, erfi, sin, cos, sinh, cosh)
-_CUT_ON_NEGATIVE_AXIS = (log, Ei, expint, uppergamma, lowergamma, besselj, besseli, besselk, bessely, meijerg)
+_ENTIRE = (exp, erf, erfc, erfi, sin, cos, sinh, cosh, Si, Shi, fresnels, fresnelc)
+_CUT_ON_NEGATIVE_AXIS = (log, Ei, Ci, Chi, expint, uppergamma, lowergamma, besselj, besseli, besselk, bessely, meijerg)
 _CUT_ON_IMAGINARY_AXIS = (asinh, atan)
 _CUT_ON_REAL_AXIS = (elliptic_k, elliptic_e, polylog, acosh, acos, asin, atanh)
 
@@ -132,7 +138,7 @@ def _off_negative_axis(interval: Interval) -> None:
 
 
 def _off_real_axis(interval: Interval) -> None:
-    if interval is None or not (0 <= interval[0] and interval[1] <= 1 or -1 <= interval[0] and interval[1] <= 0):
+    if interval is None or not ((interval[0] >= 0 and interval[1] <= 1) or (interval[0] >= -1 and interval[1] <= 0)):
         raise _Cut
 
 

@@ -14,21 +14,27 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 
-from sympy import Add, Expr, Max, Min, S, Symbol, oo
+from sympy import Add, Eq, Expr, Max, Min, Ne, S, Symbol, oo
+from sympy.core.sorting import default_sort_key
+from sympy.logic.boolalg import Boolean
 
 from ..behaviour import Convergence, converge_product
 from ..closed_form import ClosedForm, Step
 from ..matching import Term, read_terms
 from ..pieces import Piece
 from ..problem import Problem
-from ..region import Facts, real_part
+from ..region import Facts, Region, real_part
 from .finite_part import total_value
+from .lemmas import weber
 from .parseval import parseval
+from .registry import attempt
 from .subtraction import subtract_head
 from .tidy import tidy
 from .totals import converge_total
 
 _SOURCE = "DLMF 1.14.39"
+# So many values at removable singularities are worked out.
+_MOST_SPECIAL = 4
 
 
 class MellinBarnes:
@@ -42,7 +48,7 @@ class MellinBarnes:
         terms = read_terms(problem.integrand, problem.variable, problem.facts)
         if terms is None or all(len(t.kernels) < 2 for t in terms):
             return None
-        if any(len(t.kernels) > 2 for t in terms):
+        if any(len(t.kernels) > 2 and weber(t, problem.facts) is None for t in terms):
             return problem.refuse("too many kernels", "a term has more than two kernels")
         return closed_form_of_products(problem, terms, self.name)
 
@@ -51,11 +57,12 @@ def closed_form_of_products(problem: Problem, terms: Sequence[Term], name: str) 
     """The closed form of a sum of terms with at most two kernels each."""
     facts = problem.facts
     parts: Sequence[Term] = terms
+    gaps: list[Expr] = []
     if len(terms) > 1:
         total = converge_total(terms, facts)
         if isinstance(total, str):
             return problem.refuse(total, "the sum at 0 or at oo")
-        converged = total.convergence
+        converged, gaps = total.convergence, total.gaps()
         if total.hits():
             split = _regularised(terms, facts)
             if split is None:
@@ -64,23 +71,25 @@ def closed_form_of_products(problem: Problem, terms: Sequence[Term], name: str) 
     else:
         outcome = converge_product(terms[0], facts)
         if isinstance(outcome, str):
-            return problem.refuse(outcome, f"the product of {_names(terms[0])} at 0 or at oo")
+            detail = f"the product of {_names(terms[0])} at 0 or at oo"
+            return problem.diverges(detail) if outcome == "divergence" else problem.refuse(outcome, detail)
         converged = outcome
-    condition = converged.region.to_boolean()
-    if condition is S.false:
-        return problem.refuse("empty region", "the conditions contradict one another")
     values = []
     double = [t for t in parts if len(t.kernels) > 1]
     for term in double:
-        value = parseval(term, facts, converged.region)
+        value = parseval(term, facts, converged.region) if len(term.kernels) == 2 else weber(term, facts)
         if value is None:
-            return problem.refuse("no kernel", f"no closed form of the Mellin-Barnes integral of {_names(term)}")
+            return problem.refuse("too many kernels", f"no closed form of the Mellin-Barnes integral of {_names(term)}")
         values.append(value)
     if len(double) < len(parts):
         values.append(total_value([Piece.of_term(t) for t in parts if len(t.kernels) < 2]))
     value = values[0] if len(values) == 1 else tidy(Add(*values))
     if value.has(S.NaN, S.ComplexInfinity, S.Infinity, S.NegativeInfinity):
         return problem.refuse("diverges", "the formula is not finite")
+    special, region = _special_values(problem, gaps, converged.region)
+    condition = region.to_boolean()
+    if condition is S.false:
+        return problem.refuse("empty region", "the conditions contradict one another")
     kernels = list(dict.fromkeys(k for t in terms for k in t.kernels))
     sources = tuple(dict.fromkeys(k.source for k in kernels if k.source))
     return ClosedForm(
@@ -93,14 +102,37 @@ def closed_form_of_products(problem: Problem, terms: Sequence[Term], name: str) 
             Step("two transforms joined to one contour integral", _SOURCE, value),
         ),
         (*sources, _SOURCE),
+        special,
     )
+
+
+def _special_values(
+    problem: Problem, gaps: Sequence[Expr], region: Region
+) -> tuple[tuple[tuple[Boolean, Expr], ...], Region]:
+    """Values where poles of single terms meet and cancel; where there is none, the place is left out."""
+    special: list[tuple[Boolean, Expr]] = []
+    for gap in gaps:
+        where = None
+        for symbol in sorted(gap.free_symbols, key=default_sort_key):
+            slope = gap.diff(symbol)
+            if slope.has(symbol) or slope.is_zero:
+                continue
+            point = (symbol - gap / slope).expand()
+            met = attempt(problem.changed(problem.integrand.subs(symbol, point))) if len(special) < _MOST_SPECIAL else None
+            if met is not None and not met.special:
+                where = Eq(symbol, point)
+                special.append((where, met.value))
+            break
+        if where is None:
+            region = region.holds(Ne(gap, 0))
+    return tuple(special), region
 
 
 def _regularised(terms: Sequence[Term], facts: Facts) -> list[Term] | None:
     """Products that diverge at 0, without the first terms of a kernel there; those terms by themselves."""
     parts: list[Term] = []
     for term in terms:
-        if len(term.kernels) < 2 or not isinstance(converge_product(term, facts), str):
+        if len(term.kernels) != 2 or not isinstance(converge_product(term, facts), str):
             parts.append(term)
             continue
         split = subtract_head(term, facts)

@@ -4,7 +4,25 @@ from __future__ import annotations
 from collections.abc import Iterator
 from dataclasses import replace
 
-from sympy import Add, Derivative, Dummy, Expr, I, Piecewise, Pow, S, Subs, exp, hyper, meijerg, pi
+from sympy import (
+    Add,
+    Derivative,
+    Dummy,
+    Expr,
+    I,
+    Piecewise,
+    Pow,
+    S,
+    Subs,
+    besselk,
+    exp,
+    expint,
+    factorial,
+    hyper,
+    meijerg,
+    pi,
+    sqrt,
+)
 
 from ..behaviour import polar_scale
 from ..gamma import Factor
@@ -55,12 +73,35 @@ def _with_logs(term: Term, facts: Facts, region: Region) -> Expr | None:
     value = parseval(replace(term, power=term.power + p, logs=0), facts, region)
     if value is None or value.has(Piecewise):
         return None
+    slopes: dict[Dummy, tuple[Expr, Expr]] = {}
+    if term.logs == 1:
+        for node in sorted(value.atoms(besselk), key=str):
+            if node.args[0].has(p):
+                order, z = node.args
+                slope = _order_slope(order.subs(p, 0), z)
+                if slope is None:
+                    return None
+                slopes[Dummy("K")] = (node, slope * order.diff(p))
+        value = value.xreplace({node: d for d, (node, _) in slopes.items()})
     for _ in range(term.logs):
-        value = value.diff(p)
+        value = value.diff(p) + Add(*(value.diff(d) * slope for d, (_, slope) in slopes.items()))
         if value.has(Derivative, Subs):
             return None
-    value = value.subs(p, 0)
-    return None if value.has(*_BAD, meijerg) else value
+    value = value.subs({d: node for d, (node, _) in slopes.items()}).subs(p, 0)
+    return None if value.has(*_BAD, meijerg) else tidy(value)
+
+
+def _order_slope(order: Expr, z: Expr) -> Expr | None:
+    """The derivative of ``K_order(z)`` in the order, odd in it: DLMF 10.38.4 and 10.38.7."""
+    sign = -1 if order.is_negative else 1
+    order = abs(order)
+    if order == S.Half:
+        return sign * sqrt(pi / (2 * z)) * exp(z) * expint(1, 2 * z)
+    if not order.is_Integer:
+        return None
+    n = int(order)
+    terms = ((z / 2) ** (k - n) / (factorial(k) * (n - k)) * besselk(k, z) for k in range(n))
+    return sign * factorial(n) / 2 * Add(*terms)
 
 
 # -- kernels on the edge of their sector -------------------------------------------------------------------

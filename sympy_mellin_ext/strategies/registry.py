@@ -38,7 +38,7 @@ def _load() -> tuple[Strategy, ...]:
     global _strategies
     with _lock:
         if _strategies is None:
-            from . import abel_plana, exponential_series, master_theorem, mellin_barnes, ranges, taylor
+            from . import abel_plana, exponential_series, master_theorem, mellin_barnes, radical, ranges, taylor
 
             found: list[Strategy] = [
                 *master_theorem.STRATEGIES,
@@ -47,6 +47,7 @@ def _load() -> tuple[Strategy, ...]:
                 *ranges.STRATEGIES,  # before term-by-term integration of series over (0, 1)
                 *taylor.STRATEGIES,
                 *mellin_barnes.STRATEGIES,
+                *radical.STRATEGIES,
                 *ranges.CHANGES,
             ]
             for name, strategy in plug_ins(STRATEGY_GROUP):

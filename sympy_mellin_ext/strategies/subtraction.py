@@ -38,7 +38,7 @@ def without_head(kernel: Kernel, count: int) -> tuple[Kernel, list[Term]] | None
         return None
     factors = list(kernel.product.factors)
     place = next(
-        i for i, (a, A, e) in enumerate(factors) if e > 0 and 1 / A == step and (a + A * start).expand().is_Integer
+        i for i, (a, A, e) in enumerate(factors) if e > 0 and step == 1 / A and (a + A * start).expand().is_Integer
     )
     shift, slope, _ = factors[place]
     # rungs before the first uncancelled one move too: they carry no residue

@@ -5,7 +5,7 @@ from sympy import Add, Expr, Gt, Integer, Lt, Mul, Piecewise, Pow, Rational, S, 
 from sympy.logic.boolalg import Boolean
 
 from ..gamma.shortest import shortest_quotient
-from .tidy_functions import half_integer_bessel, joined_logarithms, over_common_denominator
+from .tidy_functions import half_integer_bessel, joined_logarithms, joined_roots, over_common_denominator
 
 
 def tidy(expr: Expr) -> Expr:
@@ -29,9 +29,15 @@ def tidy(expr: Expr) -> Expr:
 
 
 def _sum(terms: list[Expr]) -> Expr:
-    total = Add(*terms)
+    flat: list[Expr] = []
+    for term in terms:
+        number, rest = term.as_coeff_Mul()
+        flat.extend(number * a for a in rest.args) if rest.is_Add else flat.append(term)
+    total = Add(*flat)
     if total.is_Add and total.has(log):
         total = joined_logarithms(total)
+    if total.is_Add:
+        total = joined_roots(total)
     return common_factor(total)
 
 
@@ -51,7 +57,7 @@ def _inside(expr: Expr) -> Expr:
 
 
 def _product(expr: Expr) -> Expr:
-    args = Mul.make_args(expr)
+    args = half_integer_bessel(list(Mul.make_args(expr)))
     sums = [a for a in args if a.is_Add]
     if len(sums) == 1:
         front = Mul(*(a for a in args if a is not sums[0]))
@@ -65,7 +71,7 @@ def _product(expr: Expr) -> Expr:
         if a.is_Pow:
             flat.extend(Mul.make_args(_power(_inside(a.base), a.exp)))
         else:
-            flat.append(a if isinstance(a, gamma) or a.is_Atom else _inside(half_integer_bessel(a)))
+            flat.append(a if isinstance(a, gamma) or a.is_Atom else _inside(a))
     return _joined(flat)
 
 

@@ -1,7 +1,28 @@
 """Logarithms added up, and Bessel functions of half-integer order written out."""
 from __future__ import annotations
 
-from sympy import Add, Expr, Mul, Pow, Rational, S, atanh, besseli, besselj, besselk, bessely, factorint, igcd, log
+from sympy import (
+    Add,
+    Expr,
+    Mul,
+    Pow,
+    Rational,
+    S,
+    atanh,
+    besseli,
+    besselj,
+    besselk,
+    bessely,
+    cos,
+    cosh,
+    exp,
+    factorint,
+    igcd,
+    log,
+    pi,
+    sin,
+    sinh,
+)
 
 
 def over_common_denominator(total: Expr) -> Expr:
@@ -109,15 +130,59 @@ def _written(logs: Logs) -> Expr:
     return Add(*terms)
 
 
+# -- roots -----------------------------------------------------------------------------------------------
+
+
+def joined_roots(total: Expr) -> Expr:
+    """``a**2/sqrt(a**2 + b**2) + b**2/sqrt(a**2 + b**2)`` as ``sqrt(a**2 + b**2)``."""
+    groups: dict[tuple[Expr, Expr], list[tuple[Expr, Expr]]] = {}
+    for term in total.args:
+        for factor in Mul.make_args(term):
+            if factor.is_Pow and factor.base.is_Add and factor.exp.is_Rational and factor.exp.is_negative:
+                groups.setdefault((factor.base, factor.exp), []).append((term, term / factor))
+    for (base, exponent), members in groups.items():
+        if len(members) < 2:
+            continue
+        quotient = (Add(*(c for _, c in members)) / base).cancel()
+        if all(not f.base.is_Add for f in quotient.atoms(Pow) if f.exp.is_negative):
+            gone = {term for term, _ in members}
+            rest = [term for term in total.args if term not in gone]
+            return Add(*rest, quotient * Pow(base, exponent + 1))
+    return total
+
+
 # -- Bessel functions ------------------------------------------------------------------------------------
 
 
-def half_integer_bessel(expr: Expr) -> Expr:
-    """Bessel functions of order +-1/2 by their elementary forms, DLMF 10.16.1 and 10.39.1-2."""
-    if not isinstance(expr, besseli | besselj | besselk | bessely):
-        return expr
-    order = expr.args[0]
-    return expr.expand(func=True) if order.is_Rational and order.q == 2 and abs(order) < 2 else expr
+def half_integer_bessel(factors: list[Expr]) -> list[Expr]:
+    """Bessel functions of order +-1/2 in a product by their elementary forms, DLMF 10.16.1 and 10.39.1-2."""
+    if not any(isinstance(f, besseli | besselj | besselk | bessely) and abs(f.args[0]) == S.Half for f in factors):
+        return factors
+    exponent = Add(*(f.args[0] for f in factors if isinstance(f, exp)))
+    result: list[Expr] = []
+    for f in factors:
+        if isinstance(f, exp):
+            continue
+        if not isinstance(f, besseli | besselj | besselk | bessely) or abs(f.args[0]) != S.Half:
+            result.append(f)
+            continue
+        half, z = f.args
+        front = (pi / 2 if isinstance(f, besselk) else 2 / pi) / z
+        result.extend(Pow(b, S.Half) for b in Mul.make_args(front))
+        up = half.is_positive
+        if isinstance(f, besselk):
+            exponent = exponent - z
+        elif isinstance(f, besselj):
+            result.append(sin(z) if up else cos(z))
+        elif isinstance(f, bessely):
+            result.append(-cos(z) if up else sin(z))
+        elif exponent in (z, -z):
+            sign = -1 if up else 1
+            result.append((1 + sign * exp(-2 * z)) / 2 if exponent == -z else (exp(2 * z) + sign) / 2)
+            exponent = S.Zero
+        else:
+            result.append(sinh(z) if up else cosh(z))
+    return [*result, exp(exponent)]
 
 
-__all__ = ["half_integer_bessel", "joined_logarithms", "over_common_denominator"]
+__all__ = ["half_integer_bessel", "joined_logarithms", "joined_roots", "over_common_denominator"]

@@ -9,7 +9,7 @@ from collections.abc import Sequence
 from dataclasses import dataclass, field
 from itertools import islice, product
 
-from sympy import Expr, Ne, Rational, S
+from sympy import Expr, Rational, S
 
 from ..behaviour import INFINITE_END, ZERO_END, Convergence, restrict_kernels
 from ..matching import Kernel, Term
@@ -31,6 +31,11 @@ class Total:
     convergence: Convergence
     cancelled: list[Expr] = field(default_factory=list)
 
+    def gaps(self) -> list[Expr]:
+        """Expressions whose zeros in the region are poles of single terms."""
+        gaps = dict.fromkeys((e + 1).expand() for e in self.cancelled)
+        return [g for g in gaps if g.free_symbols and self.convergence.region.nonzero(g) is None]
+
     def hits(self) -> bool:
         """Whether an exponent that cancels is -1: single terms then have poles."""
         return any((e + 1).is_zero for e in self.cancelled)
@@ -51,13 +56,7 @@ def converge_total(terms: Sequence[Term], facts: Facts) -> Total | str:
         (found.at_zero if end == ZERO_END else found.at_infinity).extend(survivors)
         for e in survivors:
             found.region = found.region.positive(end * (real_part(e) + 1))
-    if found.region.empty:
-        return "diverges"
-    for e in result.cancelled:
-        gap = e + 1
-        if gap.free_symbols and found.region.nonzero(gap) is None:
-            found.region = found.region.holds(Ne(gap, 0))
-    return result
+    return "diverges" if found.region.empty else result
 
 
 def _survivors(terms: Sequence[Term], end: int, cancelled: list[Expr]) -> list[Expr] | None:
