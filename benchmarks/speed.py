@@ -134,7 +134,7 @@ def growth() -> list[dict[str, Any]]:
     """Time against the number of terms, parameters and factors."""
     table = []
     for n in (1, 10, 50, 100, 200, 500):
-        f = Add(*(exp(-k * X) * X**k for k in range(1, n + 1)))
+        f = Add(*(X * exp(-(Symbol("a", positive=True) + k) * X) for k in range(1, n + 1)))
         table.append({"what": "terms", "n": n, "seconds": cold(lambda f=f: closed_form(f, (X, 0, oo)))})
     for n in (1, 5, 10, 20, 30):
         rates = [Symbol(f"a{k}", positive=True) for k in range(n)]

@@ -1,7 +1,7 @@
 """Series that no table holds: phi from a differential equation, or built on zeta functions."""
 from __future__ import annotations
 
-from sympy import Add, Expr, Mul, S, Symbol, hyper, log
+from sympy import Add, Expr, Function, Mul, S, Symbol, hyper, log
 
 from ..closed_form import ClosedForm, Step
 from ..gamma.shortest import collect_powers
@@ -21,9 +21,13 @@ class TaylorSeries:
     The recurrence comes from a differential equation that annihilates f, and from equal initial terms.
     """
 
-    name = "Taylor coefficients"
+    def __init__(self, name: str, first: bool) -> None:
+        self.name = name
+        self.first = first
 
     def attempt(self, problem: Problem) -> ClosedForm | None:
+        if self.first and not _shares_argument(problem.integrand, problem.variable):
+            return None
         from ..series import taylor_transform
 
         unit = problem.lower is S.Zero and problem.upper is S.One
@@ -100,6 +104,19 @@ class ZetaCoefficients:
         )  # fmt: skip
 
 
+def _shares_argument(integrand: Expr, x: Symbol) -> bool:
+    """Whether two functions of one argument are multiplied: then one Gamma product beats a sum of series."""
+    seen = set()
+    for factor in Mul.make_args(integrand):
+        base, exponent = factor.as_base_exp()
+        if not isinstance(base, Function) or not base.args[-1].has_free(x):
+            continue
+        if base.args[-1] in seen or exponent == 2:
+            return True
+        seen.add(base.args[-1])
+    return False
+
+
 def split_front(integrand: Expr, x: Symbol) -> tuple[Expr, Expr, int, Expr]:
     """``C*x**p*log(x)**k`` in front, and the rest of a product."""
     coefficient, power, logs, rest = S.One, S.Zero, 0, []
@@ -116,4 +133,5 @@ def split_front(integrand: Expr, x: Symbol) -> tuple[Expr, Expr, int, Expr]:
     return coefficient, power, logs, Mul(*rest)
 
 
-STRATEGIES = (ZetaCoefficients(), TaylorSeries())
+STRATEGIES = (ZetaCoefficients(), TaylorSeries("Taylor coefficients of one argument", True))
+LATER = (TaylorSeries("Taylor coefficients", False),)
