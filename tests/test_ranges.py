@@ -90,6 +90,10 @@ PUBLISHED = [
     (exp(-b * sqrt(x**2 + a**2)), (x, 0, oo), a * besselk(1, a * b), "DLMF 10.32.9, x = a*sinh(t)"),
     (x * besselj(0, a * x), UNIT, besselj(1, a) / a, "DLMF 10.22.1"),
     (1 / sqrt(1 - b**2 * sin(x) ** 2), QUARTER, elliptic_k(b**2), "DLMF 19.2.4"),
+    (log(a + b * cos(x)), (x, 0, pi), pi * log((a + sqrt(a**2 - b**2)) / 2), "from memory: Gradshteyn-Ryzhik 4.224.9"),
+    (log(1 + a * tan(x) ** 2), QUARTER, pi * log(1 + sqrt(a)), "from memory: Gradshteyn-Ryzhik 4.227.17-type"),
+    ((1 - exp(-x)) / x, (x, 0, a), expint(1, a) + log(a) + EulerGamma, "DLMF 6.2.3 with 6.2.4"),
+    ((1 - cos(x)) / x, (x, 0, a), log(a) + EulerGamma - Ci(a), "DLMF 6.2.13"),
     (log(sin(x)), QUARTER, -pi * log(2) / 2, "DLMF 4.26-type; Gradshteyn-Ryzhik 4.224.3"),
     (log(tan(x)) ** 2, QUARTER, pi**3 / 8, "from memory: Gradshteyn-Ryzhik 4.227.7"),
     (tan(x) ** q, QUARTER, pi / (2 * cos(pi * q / 2)), "from memory: Gradshteyn-Ryzhik 3.622.1"),
@@ -178,6 +182,7 @@ DIVERGENT = [
     (1 / cos(x) ** 2, (x, 0, pi)),
     (1 / (1 + 2 * cos(x)), (x, 0, pi)), (x * tan(x), (x, 0, pi)), (y, (y, -oo, oo)), (sign(y), (y, -oo, oo)),
     (y / (1 + y**2), (y, -oo, oo)), (exp(y), (y, -oo, oo)), (exp(y**2), (y, -oo, oo)), (1 / (a - x), (x, 0, oo)),
+    (exp(x) / x, UNIT), ((exp(x) - 2) / x, UNIT), ((1 - cos(x)) / x**3, UNIT),
 ]  # fmt: skip
 
 

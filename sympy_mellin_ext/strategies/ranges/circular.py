@@ -6,6 +6,7 @@ Source: DLMF 5.12.2 (powers of sine and cosine), 4.21.2 and 4.21.22-24 (multiple
 from __future__ import annotations
 
 from collections.abc import Callable
+from dataclasses import replace
 from math import gcd, lcm
 
 from sympy import (
@@ -20,9 +21,11 @@ from sympy import (
     cancel,
     chebyshevt,
     chebyshevu,
+    collect,
     cos,
     cot,
     csc,
+    factor,
     log,
     pi,
     preorder_traversal,
@@ -32,9 +35,12 @@ from sympy import (
     tan,
     together,
 )
+from sympy.core.sorting import default_sort_key
+from sympy.logic.boolalg import Boolean
 
 from ...closed_form import ClosedForm, Step
 from ...problem import Problem
+from ...region import Facts, Region
 from .combined import added
 from .finite import fresh, handed_on, shown_divergent
 from .unit import solve_unit
@@ -96,10 +102,44 @@ def on_quarters(problem: Problem) -> ClosedForm | None:
 def _solved(problem: Problem, g: Expr, first: int, last: int, rate: Expr) -> ClosedForm | None:
     if last - first == 4 and not g.has(_COSINE):
         g = g.xreplace({_SINE: _COSINE})  # a full turn may start anywhere
-    answer = _by_quarters(problem, g, first, last, rate)
-    if answer is None and not shown_divergent(problem):
-        answer = _by_halves(problem, g, first, last, rate)
-    return answer
+    routes = [_logarithmic, _by_quarters, _by_halves]
+    sums = [n.base for n in preorder_traversal(g) if type(n) is Pow and type(n.base) is Add]
+    if any(_is_odd(total, problem.facts) for total in sums):
+        routes = [_logarithmic, _by_halves, _by_quarters]
+    for route in routes:
+        answer = route(problem, g, first, last, rate)
+        if answer is not None or shown_divergent(problem):
+            return answer
+    return None
+
+
+def _is_odd(total: Expr, facts: Facts) -> bool:
+    """Whether a sum holds a known multiple of the cosine itself, which ``t = sin(x)**2`` turns into a root."""
+    slope = total.coeff(_COSINE, 1)
+    return slope is not S.Zero and facts.sign(slope) is not None
+
+
+def _logarithmic(problem: Problem, g: Expr, first: int, last: int, rate: Expr) -> ClosedForm | None:
+    """Logarithms of ``A + B*cos``: half angles, where A + B and A - B are positive."""
+    facts = problem.facts
+    assumed: list[Boolean] = []
+    found = False
+    for node in sorted(g.atoms(log), key=default_sort_key):
+        inner = node.args[0]
+        if type(inner) is Add and inner.has(_COSINE) and not inner.has(_SINE):
+            slope = inner.diff(_COSINE)
+            if slope.has(_COSINE):
+                return None
+            found = True
+            ends = [factor(inner.xreplace({_COSINE: S(turn)})) for turn in (1, -1)]
+            assumed.extend(end > 0 for end in ends if facts.sign(end) != 1)
+    if not found or any(condition is S.false for condition in assumed):
+        return None
+    inner_problem = replace(problem, facts=Facts((*facts.given, *assumed))) if assumed else problem
+    answer = _by_halves(inner_problem, g, first, last, rate)
+    if answer is None or not assumed:
+        return answer
+    return replace(answer, condition=Region(facts).holds(answer.condition, *assumed).to_boolean())
 
 
 def _first_moment(problem: Problem, g: Expr, first: int, last: int, rate: Expr) -> ClosedForm | None:
@@ -219,7 +259,7 @@ def _first_quarter(problem: Problem, g: Expr) -> ClosedForm | None:
             return answer
     u = fresh(problem, positive=True)
     inner = g.xreplace({a: u / sqrt(1 + u**2), b: 1 / sqrt(1 + u**2)})
-    return handed_on(problem, _joined(inner / (1 + u**2)), u)
+    return handed_on(problem, _joined(inner / (1 + u**2), u), u)
 
 
 def _complementary(problem: Problem, g: Expr) -> ClosedForm | None:
@@ -241,24 +281,21 @@ def _by_halves(problem: Problem, g: Expr, first: int, last: int, rate: Expr) -> 
     for half in range(first // 2, last // 2):
         turn = 1 if half % 2 == 0 else -1
         inner = g.xreplace({_SINE: turn * 2 * u / (1 + u**2), _COSINE: (1 - u**2) / (1 + u**2)})
-        halves.append(_joined(inner * 2 / (1 + u**2)))
+        halves.append(_joined(inner * 2 / (1 + u**2), u))
     parts = _counted(halves, lambda part: handed_on(problem, part, u), rate)
     return None if parts is None else added(problem, parts, Step("u = tan(x/2)", "from memory: Weierstrass"))
 
 
-def _joined(expr: Expr) -> Expr:
-    """Sums inside powers and logarithms over one denominator, so that they can be read."""
+def _joined(expr: Expr, u: Symbol) -> Expr:
+    """Sums inside powers and logarithms over one denominator, numerators by powers of u, so that they can be read."""
+
+    def over_one(total: Expr) -> Expr:
+        above, below = together(total).as_numer_denom()
+        return collect(above.expand(), u, factor) / below
 
     def rule(node: Expr) -> Expr:
-        if type(node) is Pow and type(node.base) is Add:
-            return Pow(_over_one(node.base), node.exp)
-        return log(_over_one(node.args[0])) if type(node) is log else node
+        return Pow(over_one(node.base), node.exp) if type(node) is Pow else log(over_one(node.args[0]))
 
-    return expr.replace(lambda node: type(node) is log or (type(node) is Pow and type(node.base) is Add), rule)
-
-
-def _over_one(expr: Expr) -> Expr:
-    fraction = together(expr)
-    number, bottom = fraction.as_numer_denom()
-    number = number.expand()
-    return number / bottom
+    return expr.replace(
+        lambda node: type(node) is log or (type(node) is Pow and type(node.base) is Add and node.has_free(u)), rule
+    )

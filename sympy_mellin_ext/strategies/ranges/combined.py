@@ -75,7 +75,7 @@ def replaced(answer: ClosedForm, old: Symbol, new: Expr, extra: Boolean, facts: 
         strip=None if strip is None else (strip[0].xreplace({old: new}), strip[1].xreplace({old: new})),
         special=tuple((w.xreplace({old: new}), v.xreplace({old: new})) for w, v in answer.special),
         steps=tuple(
-            replace(step, result=None) if step.result is not None and step.formula.has(old) else step
+            replace(step, result=None) if (shown := step.formula) is not None and shown.has(old) else step
             for step in answer.steps
         ),
     )

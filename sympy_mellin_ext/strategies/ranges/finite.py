@@ -62,6 +62,9 @@ def on_unit(problem: Problem, integrand: Expr, x: Symbol) -> ClosedForm | None:
         return answer
     t = fresh(problem, positive=True)
     answer = handed_on(problem, integrand.xreplace({x: exp(-t)}) * exp(-t), t)
+    if answer is None and (problem.lower is not S.Zero or problem.upper is not S.One):
+        # for strategies that know (0, 1) themselves
+        return handed_on(problem, integrand, x, S.Zero, S.One)
     return doubled(problem, answer, S.One, "substitution x = exp(-t)")
 
 
