@@ -5,6 +5,7 @@ from sympy import Add, Expr, Mul, Pow, S, cancel, count_ops, factor, factor_term
 
 # Larger sums are left as they are: the gain would not pay for the search.
 _MOST_TERMS = 12
+_MOST_FRACTIONS = 4
 
 
 def shortest_sum(total: Expr) -> Expr:
@@ -27,7 +28,7 @@ def shortest_sum(total: Expr) -> Expr:
         candidates.append(joined)
     if total.is_Add:
         symbols = sorted(total.free_symbols, key=str)
-        if symbols and total.is_rational_function(*symbols):
+        if symbols and len(total.args) <= _MOST_FRACTIONS and total.is_rational_function(*symbols):
             candidates.append(factor(cancel(total)))
         else:
             candidates.append(factor_terms(joined, sign=True))

@@ -86,6 +86,9 @@ def split(factors: list[tuple[Expr, int]], x: Symbol, facts: Facts) -> list[Draf
     ratio = common_ratio(bases)
     if ratio is None or facts.sign(ratio) is None:
         return None
+    drafts = _simple(bases, [n for _, n in factors], ratio, facts)
+    if drafts is not None:
+        return [d.times(Draft(power=front_power)) for d in drafts]
     y = Dummy("y")  # never leaves this module: polynomials are read back by their coefficients
     try:
         denominators = _factored(bases, [n for _, n in factors], ratio, y)
@@ -94,7 +97,7 @@ def split(factors: list[tuple[Expr, int]], x: Symbol, facts: Facts) -> list[Draf
     if denominators is None:
         return None
     constant, denominators = denominators
-    drafts: list[Draft] = []
+    drafts = []
     for numerator, den in _partial_fractions(denominators, y):
         part = _one_fraction(numerator, den, ratio, facts, y)
         if part is None:
@@ -102,6 +105,30 @@ def split(factors: list[tuple[Expr, int]], x: Symbol, facts: Facts) -> list[Draf
         drafts.extend(part)
     front = Draft(coefficient=1 / constant, power=front_power)
     return [d.times(front) for d in drafts]
+
+
+def _simple(
+    bases: list[list[tuple[Expr, Expr]]], powers: list[int], ratio: Expr, facts: Facts
+) -> list[Draft] | None:
+    """``1/prod (c_i + y)`` with different constants: ``sum 1/(prod_(j != i) (c_j - c_i)) / (c_i + y)``."""
+    if any(n != 1 for n in powers) or not all(len(b) == 2 and ratio in (b[0][1], b[1][1]) for b in bases):
+        return None
+    front, constants = S.One, []
+    for base in bases:
+        (c0, p0), (c1, _) = base
+        if not p0.is_zero:
+            c0, c1 = c1, c0
+        front, constants = front / c1, [*constants, c0 / c1]
+    if len(set(constants)) < len(constants):
+        return None
+    drafts: list[Draft] = []
+    for i, c in enumerate(constants):
+        weight = front / Mul(*(other - c for j, other in enumerate(constants) if j != i))
+        part = _binomial([(0, weight)], 1, c, 1, ratio, facts)
+        if part is None:
+            return None
+        drafts.extend(part)
+    return drafts
 
 
 def _factored(
