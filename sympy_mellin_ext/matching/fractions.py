@@ -13,6 +13,7 @@ from sympy import (
     Dummy,
     Expr,
     Integer,
+    Mul,
     Poly,
     S,
     Symbol,
