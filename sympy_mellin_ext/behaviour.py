@@ -139,7 +139,7 @@ def converge_product(term: Term, facts: Facts) -> Convergence | str:
     >>> s, nu = symbols('s nu', real=True)
     >>> term, = read_terms(x**(s - 1)*besselj(nu, a*x)/(1 + x**2), x, Facts())
     >>> converge_product(term, Facts()).region.to_boolean()
-    (s < 7/2) & (s > -nu)
+    (s < 7/2) & (nu + s > 0)
     """
     result = Convergence(Region(facts))
     reason = restrict_kernels(result, term, facts)

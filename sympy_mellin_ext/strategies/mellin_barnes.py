@@ -118,7 +118,9 @@ def _special_values(
             if slope.has(symbol) or slope.is_zero:
                 continue
             point = (symbol - gap / slope).expand()
-            met = attempt(problem.changed(problem.integrand.subs(symbol, point))) if len(special) < _MOST_SPECIAL else None
+            met = None
+            if len(special) < _MOST_SPECIAL:
+                met = attempt(problem.changed(problem.integrand.subs(symbol, point)))
             if met is not None and not met.special:
                 where = Eq(symbol, point)
                 special.append((where, met.value))

@@ -113,7 +113,7 @@ def _standing(kernels: tuple[Kernel, ...]) -> Iterator[tuple[Expr, tuple[Kernel,
         split = _split(kernel)
         if split is not None:
             for coefficient, part in split:
-                rest = kernels[:place] + (part,) + kernels[place + 1 :]
+                rest = (*kernels[:place], part, *kernels[place + 1 :])
                 for c, ks in _standing(rest):
                     yield coefficient * c, ks
             return
@@ -234,7 +234,8 @@ def _entire_series(rows: tuple[Factor, ...], wave: Wave | None, z: Expr) -> Expr
     for tail in series.tails:
         phase = exp((I * (wave.angle * norm.power * tail.exponent - wave.phase)).expand())
         f = _pfq(tail.upper, tail.lower, tail.sign * (-1) ** int(turn) * w)
-        parts.append(norm.constant * tail.coefficient * phase * positive_power(size, tail.exponent) * f.xreplace({w: size}))
+        front = norm.constant * tail.coefficient * phase * positive_power(size, tail.exponent)
+        parts.append(front * f.xreplace({w: size}))
     return Add(*parts)
 
 

@@ -143,8 +143,12 @@ def joined_roots(total: Expr) -> Expr:
     for (base, exponent), members in groups.items():
         if len(members) < 2:
             continue
-        quotient = (Add(*(c for _, c in members)) / base).cancel()
-        if all(not f.base.is_Add for f in quotient.atoms(Pow) if f.exp.is_negative):
+        numerator = Add(*(c for _, c in members)).expand()
+        first = base.args[0]
+        quotient = next(
+            (t / first for t in Add.make_args(numerator) if (numerator - t / first * base).expand() is S.Zero), None
+        )
+        if quotient is not None:
             gone = {term for term, _ in members}
             rest = [term for term in total.args if term not in gone]
             return Add(*rest, quotient * Pow(base, exponent + 1))
