@@ -6,7 +6,27 @@ from mpmath import almosteq, mpc, mpf
 from mpmath import airyai, pi, sqrt, workdps
 from mpmath import erfc as erfc_number
 from mpmath import exp as exp_number
-from sympy import Expr, Function, Mul, Rational, Symbol, besseli, besselj, besselk, erfc, exp, expint, hyper, lambdify, oo, re, uppergamma
+from sympy import (
+    Expr,
+    Function,
+    Mul,
+    Rational,
+    Symbol,
+    besseli,
+    besselj,
+    besselk,
+    bessely,
+    cos,
+    erfc,
+    exp,
+    expint,
+    hyper,
+    lambdify,
+    oo,
+    re,
+    sin,
+    uppergamma,
+)
 
 from sympy_mellin_ext import closed_form
 from sympy_mellin_ext.kernels import pair_rows, rows
@@ -28,7 +48,9 @@ ORDERS = {
 }
 GROWING = {"besseli"}  # serves in products only
 SPECIAL = {"turned 1F1": hyper([Rational(3, 5)], [Rational(12, 5)], x)}
-CLASSES = {c.__name__: c for c in (exp, besseli, besselj, besselk, erfc, expint, uppergamma)}
+CLASSES = {
+    c.__name__: c for c in (exp, besseli, besselj, besselk, bessely, cos, erfc, expint, sin, uppergamma)
+}
 
 
 def middle(lower: list, upper: list) -> Rational:
@@ -99,6 +121,7 @@ PAIRS = [(names, i) for names, found in sorted(pair_rows().items()) for i in ran
 def test_pair(names: tuple[str, str], number: int) -> None:
     pair = pair_rows()[names][number]
     orders = {"besselj": Rational(2, 3), "besseli": Rational(2, 3), "besselk": Rational(1, 5)}
+    orders |= {"bessely": Rational(1, 5)}
     orders |= {"uppergamma": Rational(2, 5), "expint": Rational(8, 5)}
     factors = []
     for place, name in enumerate(names):

@@ -63,6 +63,7 @@ def shortest_quotient(up: Sequence[Expr], down: Sequence[Expr]) -> Expr:
     outside: list[Expr] = []
     _cancel_integer_differences(ups, downs, outside)
     _duplicate(ups, downs, outside)
+    _reflect(downs, -1, outside, (1,))
     _cosine(ups, downs, outside)
     _reflect(ups, 1, outside)
     _reflect(downs, -1, outside)
@@ -185,8 +186,11 @@ def _duplicate(ups: list[Expr], downs: list[Expr], outside: list[Expr]) -> None:
                     break
 
 
-def _reflect(side: list[Expr], sign: int, outside: list[Expr]) -> None:
-    """Gamma(x) Gamma(1-x) = pi/sin(pi x); other integer sums only where the quotient stays regular."""
+def _reflect(side: list[Expr], sign: int, outside: list[Expr], totals: Sequence[int] = ()) -> None:
+    """Gamma(x) Gamma(1-x) = pi/sin(pi x); other integer sums only where the quotient stays regular.
+
+    With ``totals``, pairs of such a sum only.
+    """
     again = True
     while again:
         again = False
@@ -197,7 +201,7 @@ def _reflect(side: list[Expr], sign: int, outside: list[Expr]) -> None:
                 total = a + b
                 if not total.is_Number:
                     total = total.expand()
-                if not total.is_Integer:
+                if not total.is_Integer or (totals and total not in totals):
                     continue
                 if total != 1 and not (a.is_Number or total == 0 or (sign < 0 and 0 <= total <= 2)):
                     continue

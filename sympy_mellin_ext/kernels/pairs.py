@@ -35,6 +35,21 @@ def _jj(mu: Expr, nu: Expr) -> GammaProduct:
     )
 
 
+def _jy(mu: Expr, nu: Expr) -> GammaProduct:
+    d, t = (mu - nu) / 2, (mu + nu) / 2
+    return of(
+        up=[(d, _H), (t, _H), (1, -1)],
+        down=[(_H + d, _H), (_H - d, -_H), (1 + d, -_H), (1 + t, -_H)],
+        constant=-_H,
+        scale=_H,
+    )
+
+
+def _with_wave(transform: Callable[[Expr, Expr], GammaProduct], mu: Expr) -> Callable[[Expr], GammaProduct]:
+    """With cos(z) (mu = -1/2) or sin(z) (mu = 1/2) for J_mu: sqrt(pi*z/2)*J_mu(z), DLMF 10.16.1."""
+    return lambda nu: of(constant=sqrt(pi / 2)) * transform(mu, nu).shifted(_H)
+
+
 def _ik(mu: Expr, nu: Expr) -> GammaProduct:
     d, t = (mu - nu) / 2, (mu + nu) / 2
     return of(
@@ -51,6 +66,11 @@ def _kk(mu: Expr, nu: Expr) -> GammaProduct:
 
 PAIRS = (
     Pair(("besselj", "besselj"), _jj, "DLMF 10.22.57"),
+    Pair(("besselj", "bessely"), _jy, "DLMF 10.22.57 with 10.2.3"),
+    Pair(("cos", "besselj"), _with_wave(_jj, -_H), "DLMF 10.22.57 with 10.16.1"),
+    Pair(("sin", "besselj"), _with_wave(_jj, _H), "DLMF 10.22.57 with 10.16.1"),
+    Pair(("cos", "bessely"), _with_wave(_jy, -_H), "DLMF 10.22.57 with 10.2.3 and 10.16.1"),
+    Pair(("sin", "bessely"), _with_wave(_jy, _H), "DLMF 10.22.57 with 10.2.3 and 10.16.1"),
     Pair(("besseli", "besselk"), _ik, "DLMF 10.43.28-type; from memory: Gradshteyn-Ryzhik 6.576.5"),
     Pair(("besselk", "besselk"), _kk, "from memory: Gradshteyn-Ryzhik 6.576.4"),
     Pair(

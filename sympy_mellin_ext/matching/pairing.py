@@ -12,7 +12,7 @@ from ..kernels.elementary import power as power_transform
 from ..kernels.pairs import Pair
 from .term import Kernel
 
-_SCALES = {"besselj": 2, "besselk": 2, "besseli": 2}  # the rows keep 1/2 in the scale
+_SCALES = dict.fromkeys(("besseli", "besselj", "besselk", "bessely", "cos", "sin"), 2)  # the rows keep 1/2 in the scale
 
 
 def combine(kernels: tuple[Kernel, ...]) -> tuple[Kernel, ...]:

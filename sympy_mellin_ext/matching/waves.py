@@ -197,8 +197,18 @@ def _decaying(
             condition = decay > 0
     else:
         frequency = decay / I
-        if frequency.is_extended_real and facts.sign(frequency) in (1, -1):
-            turn = facts.sign(frequency)
+        turn = facts.sign(frequency) if frequency.is_extended_real else 0
+        if turn is None:
+            # exp(-I*w*y) = cos(|w|*y) - I*sign(w)*sin(|w|*y)
+            size, known = Abs(frequency), Ne(frequency, 0)
+            return [
+                (c, (Kernel(name, product.with_scale(size), ratio, None, known, False, _SOURCE),))
+                for c, name, product in (
+                    (coefficient, "cos", COS),
+                    (-I * sign(frequency) * coefficient, "sin", SIN),
+                )
+            ]
+        if turn in (1, -1):
             decay, wave, inside = turn * frequency, Wave(turn * pi / 2, S.Zero, False), False
         else:
             condition = real_part(decay) > 0
