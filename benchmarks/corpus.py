@@ -34,7 +34,7 @@ def run(entries: Sequence[Entry], options: argparse.Namespace) -> list[Result]:
     """Measure all entries, at most `options.jobs` at a time, each in a forked process."""
     context = multiprocessing.get_context("fork")
     # alarms end a call in time; this is for code that does not come back to the interpreter
-    patience = options.seconds * (2 + 6 * options.stock) + 180
+    patience = 4 * options.seconds * (2 + 6 * options.stock) + 180
     waiting = list(reversed(entries))
     running: dict[Connection, tuple[Any, Entry, float]] = {}
     results: dict[str, Result] = {}
@@ -158,7 +158,7 @@ def parser() -> argparse.ArgumentParser:
     result.add_argument("path", help="a .jsonl file, or a folder of them")
     result.add_argument("--stock", action="store_true", help="SymPy's own integrate beside ours")
     result.add_argument("--only", nargs="+", default=[], metavar="NAME", help="families or single entries")
-    result.add_argument("--seconds", type=float, default=10, help="time limit for each call (default 10)")
+    result.add_argument("--seconds", type=float, default=10, help="processor time for each call (default 10)")
     result.add_argument("--regions", action="store_true", help="compare the regions with the listed ones")
     result.add_argument("--jobs", type=int, default=1, help="processes at a time (default 1)")
     result.add_argument("--json", metavar="FILE", help="write all results as JSON")
