@@ -6,6 +6,7 @@ from mpmath import mp
 from sympy import (
     Abs,
     Catalan,
+    Ci,
     Eq,
     EulerGamma,
     Heaviside,
