@@ -14,7 +14,7 @@ from dataclasses import dataclass, replace
 from fractions import Fraction
 from itertools import combinations
 
-from sympy import Add, Dummy, Expr, Mul, Pow, S, Symbol, exp, gamma, sqrt
+from sympy import Add, Dummy, Expr, Mul, Pow, S, Symbol, exp, gamma
 from sympy.logic.boolalg import Boolean
 
 from ..closed_form import ClosedForm, Step
@@ -24,7 +24,8 @@ from ..strategies.registry import attempt
 from .integrand import Product, above, below
 from .linear import fraction, particular, rational
 from .outcome import Outcome
-from .polynomial import Monomial, Polynomial, as_expr, collected, product
+from .polynomial import Monomial, Polynomial, collected, product
+from .trinomial import positive_trinomial
 
 Direction = tuple[Fraction, ...]
 _MOST_DIRECTIONS = 24
@@ -209,7 +210,7 @@ def _single(
                 booleans.append(c > 0)
                 facts = Facts((*facts.given, c > 0))
         elif not all(c.is_extended_real and facts.sign(c) == 1 for c, _ in inner):
-            condition = _positive_trinomial(inner, facts)
+            condition = positive_trinomial(inner, facts)
             if condition is None:
                 return None
             booleans.append(condition)
@@ -247,18 +248,6 @@ def _indefinite(rest: Product, poly: Polynomial, p: Expr) -> Product:
     """Times ``poly**(-p)`` for a sum that is positive for a reason of its own."""
     sums = (*rest.sums, (poly, p))
     return replace(rest, sums=sums)
-
-
-def _positive_trinomial(poly: Polynomial, facts: Facts) -> Boolean | None:
-    """When ``a*t**(2k) + b*t**k + c`` with a, c > 0 is positive for all t > 0: b > -2*sqrt(a*c)."""
-    if len(poly) != 3:
-        return None
-    (a, ea), (b, eb), (c, ec) = poly
-    if any((x + z - 2 * y).expand() is not S.Zero for x, y, z in zip(ea, eb, ec, strict=True)):
-        return None
-    if facts.sign(a) != 1 or facts.sign(c) != 1 or not b.is_extended_real:
-        return None
-    return b > -2 * sqrt(a * c)
 
 
 # -- Liouville ------------------------------------------------------------------------------------------------
@@ -336,4 +325,4 @@ def _multiple(inner: Polynomial, unit: Polynomial, k: Expr, powers: dict[Expr, P
     return c
 
 
-__all__ = ["Reduction", "as_expr", "reductions"]
+__all__ = ["LIOUVILLE", "Reduction", "reductions"]

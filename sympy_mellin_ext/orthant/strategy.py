@@ -4,7 +4,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 from dataclasses import dataclass, field, replace
 
-from sympy import Add, Dummy, Expr, Ne, S, Symbol
+from sympy import Add, Dummy, Expr, S, Symbol
 
 from ..closed_form import ClosedForm, Step
 from ..gamma.shortest import collect_powers
@@ -19,6 +19,7 @@ from .order import region_in_order
 from .outcome import BAD, Outcome
 from .polynomial import whole_power
 from .reader import read_products
+from .trinomial import narrower, trinomial
 
 NAME = "orthant"
 _SOURCE = "DLMF 1.14.39"
@@ -71,8 +72,9 @@ class Search:
     def one_variable(self, product: Product, x: Symbol) -> Outcome | None:
         """The last integral, by the strategies for one variable."""
         answer = attempt(Problem(product.as_expr((x,)), x, facts=self.facts, depth=1))
-        if answer is None:
-            return None
+        general = trinomial(product, self.facts)
+        if answer is None or general is not None and narrower(answer.condition, general, self.facts):
+            return general
         if fragile(answer.value, Region(self.facts).holds(answer.condition)):
             found = contour(product, self.facts)
             if found is not None:
@@ -198,4 +200,4 @@ def finished(total: Outcome, facts: Facts, names: Sequence[Symbol] = ()) -> Clos
     )
 
 
-__all__ = ["NAME", "Ne", "integrate_orthant"]
+__all__ = ["NAME", "integrate_orthant"]
