@@ -70,6 +70,8 @@ class Outcome(NamedTuple):
     divergent : bool
         Whether the integral was shown to diverge; SymPy, which may step over a pole, is not asked then.
     infinity : oo or -oo, where it diverges to that.
+    diagnosis : Diagnosis, or None
+        Why there is no closed form.
     """
 
     closed: ClosedForm | None = None
@@ -77,6 +79,7 @@ class Outcome(NamedTuple):
     question: tuple[Expr, tuple[Tuple, ...]] | None = None
     divergent: bool = False
     infinity: Expr | None = None
+    diagnosis: Diagnosis | None = None
 
     def unbounded(self) -> Expr:
         """What stands for an integral that we know to diverge: oo or -oo, else the integral itself."""
@@ -108,7 +111,7 @@ def try_strategies(
     except RecursionError:  # SymPy may have a shallower way
         answer = None
     if answer is None:
-        return Outcome(question=question, divergent=diagnosis.divergent, infinity=diagnosis.infinity)
+        return Outcome(None, None, question, diagnosis.divergent, diagnosis.infinity, diagnosis)
     if conds == "piecewise":
         return Outcome(answer, answer.as_piecewise(nested), question)
     bare = answer.value if conds == "none" else (answer.value, answer.condition)
