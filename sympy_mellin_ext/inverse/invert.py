@@ -12,7 +12,6 @@ from sympy import (
     Rational,
     S,
     Symbol,
-    expand_mul,
     gamma,
     hyper,
     meijerg,
@@ -21,7 +20,7 @@ from sympy import (
 from .pfq import named_pfq, put
 from .residues import Tail, left_series, residue_at
 from .rows import _two_by_two_hyper, look_up, look_up_fixed
-from .signature import Signature, Zero, as_int, cancel, compress, is_nonpositive_int, normalise, power
+from .signature import Signature, Zero, as_int, cancel, compress, is_nonpositive_int, normalise, power, spread
 from .tidy import tidy
 
 BAD = (S.NaN, S.ComplexInfinity, S.Infinity, S.NegativeInfinity)
@@ -166,7 +165,7 @@ class _Search:
 
     def operated(self, value: Any, zeros: list[Zero]) -> Any:
         for zero in zeros:
-            value = expand_mul(zero.shift * value - zero.side * self.w * value.diff(self.w))
+            value = spread(zero.shift * value - zero.side * self.w * value.diff(self.w))
         return value
 
     def table(self, sig: Signature) -> Any:
@@ -223,7 +222,7 @@ class _Search:
                     upper.remove(a)
                     lower.remove(a)
             f = hyper(upper, lower, argument)
-        return expand_mul(tail.coefficient * power(self.w, tail.exponent) * f)
+        return spread(tail.coefficient * power(self.w, tail.exponent) * f)
 
     def broken(self, sig: Signature) -> Any:
         """Lam = 0: two functions, one on each side of w = 1."""

@@ -28,7 +28,7 @@ from sympy import (
 )
 
 from .contiguous import contiguous, shifts
-from .signature import as_int, is_nonpositive_int, power
+from .signature import as_int, is_nonpositive_int, power, spread
 
 HALF = S.Half
 
@@ -178,7 +178,7 @@ def neighbour(
     pair = contiguous(base[0], base[1], moves, sign, y)
     if pair is None:
         return None
-    return expand_mul(factor(pair[0]) * value + factor(pair[1]) * expand_mul(y * value.diff(y)))
+    return spread(factor(pair[0]) * value + factor(pair[1]) * spread(y * value.diff(y)))
 
 
 def falling_power(a: Expr, sign: int, y: Symbol) -> Expr:

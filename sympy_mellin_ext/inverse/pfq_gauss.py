@@ -5,6 +5,7 @@ from __future__ import annotations
 from typing import Any
 
 from sympy import (
+    Dummy,
     Expr,
     Integer,
     Rational,
@@ -20,6 +21,7 @@ from sympy import (
     cosh,
     elliptic_e,
     elliptic_k,
+    factor,
     gamma,
     log,
     pi,
@@ -28,7 +30,7 @@ from sympy import (
     sqrt,
 )
 
-from .contiguous import shifts
+from .contiguous import contiguous, shifts
 from .pfq_confluent import neighbour, polynomial
 from .signature import as_int, is_nonpositive_int
 
@@ -58,7 +60,9 @@ def gauss(a: Expr, b: Expr, c: Expr, sign: int, y: Symbol) -> Expr | None:
             numeric = all(v.is_Rational for v in base)
             if moves is None or sum(map(abs, moves)) > (8 if numeric else 4):
                 continue
-            found = neighbour(((base[0], base[1]), base[2]), moves, sign, y, _direct(*base, sign, y))
+            found = _power_neighbour(base, moves, sign, y)
+            if found is None:
+                found = neighbour(((base[0], base[1]), base[2]), moves, sign, y, _direct(*base, sign, y))
             if found is not None:
                 return found
     return None
@@ -144,6 +148,45 @@ def _half_step(a: Any, c: Any, sign: int, y: Symbol) -> Any:
     if shift == 1:
         return Integer(2) ** (2 * a) * (1 + sqrt(1 - z)) ** (-2 * a)
     return None
+
+
+def _power_neighbour(base: tuple[Any, Any, Any], moves: tuple[int, ...], sign: int, y: Symbol) -> Any:
+    """Neighbours of the rows that are sums of powers: their coefficients stay rational in one radical.
+
+    The row is ``sum f_i*G_i`` and its theta is ``sum t_i*G_i``, f_i and t_i rational in the radical r.
+    """
+    a, b, c = base
+    r = Dummy("r", positive=True)
+    functions: tuple[Any, ...]
+    f: tuple[Any, ...]
+    t: tuple[Any, ...]
+    if as_int(c - 2 * a) == 1 and b - a == HALF:
+        root, argument = sqrt(1 - sign * y), sign * (1 - r**2)
+        functions, f, t = (Integer(2) ** (2 * a) * (1 + root) ** (-2 * a),), (S.One,), (a * (1 - r) / r,)
+    elif c == HALF and b - a == HALF:
+        root, argument = sqrt(y), r**2
+        if sign > 0:
+            functions, f = ((1 + root) ** (-2 * a), (1 - root) ** (-2 * a)), (HALF, HALF)
+            t = (-a * r / (2 * (1 + r)), a * r / (2 * (1 - r)))
+        else:
+            lead, phase = (1 + y) ** (-a), 2 * a * atan(root)
+            functions, f = (lead * cos(phase), lead * sin(phase)), (S.One, S.Zero)
+            t = (-a * r**2 / (1 + r**2), -a * r / (1 + r**2))
+    elif b == 1 and c == 2 and a != 1:
+        root, argument, z = y, r, sign * r
+        functions = (S.One, (1 - sign * y) ** (-a))
+        f = (1 / ((1 - a) * z), -(1 - z) / ((1 - a) * z))
+        t = (-f[0], 1 - f[1])
+    else:
+        return None
+    pair = contiguous((a, b), c, moves, sign, y)
+    if pair is None:
+        return None
+    total: Any = S.Zero
+    p, q = (e.xreplace({y: argument}) for e in pair)
+    for g, fi, ti in zip(functions, f, t, strict=True):
+        total += factor(p * fi + q * ti).xreplace({r: root}) * g
+    return total
 
 
 def at_one(a: Expr, b: Expr, c: Expr) -> Expr | None:

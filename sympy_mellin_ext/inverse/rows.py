@@ -24,7 +24,6 @@ from sympy import (
     cos,
     erfi,
     exp,
-    expand_mul,
     expint,
     fresnelc,
     fresnels,
@@ -37,7 +36,7 @@ from sympy import (
 
 from .pfq import named_pfq
 from .pfq_gauss import around_one
-from .signature import Params, Signature, as_int, power
+from .signature import Params, Signature, as_int, power, spread
 from .tricomi import bessel_k, tricomi
 
 HALF = S.Half
@@ -64,13 +63,13 @@ def _bessel_y(a: Params, b: Params, c: Params, d: Params, w: Symbol) -> Any:
 def _damped_tricomi(a: Params, b: Params, c: Params, d: Params, w: Symbol) -> Any:
     """exp(-w)*U: DLMF 13.4.18."""
     u = tricomi(c[0] - a[1], 1 + a[0] - a[1], w)
-    return None if u is None else expand_mul(power(w, a[0]) * exp(-w) * u)
+    return None if u is None else spread(power(w, a[0]) * exp(-w) * u)
 
 
 def _tricomi(a: Params, b: Params, c: Params, d: Params, w: Symbol) -> Any:
     """DLMF 13.4.17."""
     u = tricomi(a[0] + b[0], 1 + a[0] - a[1], w)
-    return None if u is None else expand_mul(gamma(a[0] + b[0]) * gamma(a[1] + b[0]) * power(w, a[0]) * u)
+    return None if u is None else spread(gamma(a[0] + b[0]) * gamma(a[1] + b[0]) * power(w, a[0]) * u)
 
 
 def barnes_first(a: Params, b: Params) -> Any:
@@ -195,6 +194,10 @@ def _goodwin_staton(w: Any) -> Any:
     return pi * exp(-w) * (pi * erfi(sqrt(w)) - Ei(w))
 
 
+def _goodwin_staton_moment(w: Any) -> Any:
+    return pi * sqrt(pi) - sqrt(w) * _goodwin_staton(w)
+
+
 def _sine_stieltjes(w: Any) -> Any:
     x = 2 * sqrt(w)
     return (exp(-x) * Ei(x) + exp(x) * expint(1, x)) / sqrt(pi)
@@ -206,6 +209,9 @@ FIXED: tuple[Fixed, ...] = (
     Fixed(Signature((S.Zero, HALF, 3 * QUARTER), (QUARTER,), (), ()), _fresnel_f, "DLMF 7.7.10, 7.2.10"),
     Fixed(Signature((S.Zero, HALF, QUARTER), (3 * QUARTER,), (), ()), _fresnel_g, "DLMF 7.7.11, 7.2.11"),
     Fixed(Signature((S.Zero, S.Zero, HALF), (HALF, S.One), (), ()), _goodwin_staton, "DLMF 7.2.12, 7.5.13"),
+    Fixed(
+        Signature((S.Zero, HALF, HALF), (HALF, S.One), (), ()), _goodwin_staton_moment, "from the row before"
+    ),
     Fixed(Signature((HALF, HALF), (HALF,), (), (S.One,)), _sine_stieltjes, "DLMF 6.7.1-3"),
 )
 
@@ -231,9 +237,9 @@ def look_up_fixed(sig: Signature, w: Symbol) -> Any:
     for row in FIXED:
         if row.signature.counts != sig.counts:
             continue
-        for n in range(5):
-            # a right Gamma is at base - shift, raised n times
-            p = row.signature.right[0] + n - sig.right[0]
+        # a right Gamma stands at base - shift, raised n times
+        for n, base_right in product(range(5), row.signature.right):
+            p = base_right + n - sig.right[0]
             parts = [
                 _steps(base, given, shift, up)
                 for base, given, shift, up in zip(
@@ -246,8 +252,8 @@ def look_up_fixed(sig: Signature, w: Symbol) -> Any:
             for part, side in zip(parts, (1, -1, 1, -1), strict=True):
                 for start, count in part or []:
                     for k in range(count):
-                        value = expand_mul((start + k) * value - side * w * value.diff(w))
-            return expand_mul(value)
+                        value = spread((start + k) * value - side * w * value.diff(w))
+            return spread(value)
     return None
 
 

@@ -11,7 +11,7 @@ from collections.abc import Iterable
 from math import gcd, lcm
 from typing import Any, NamedTuple
 
-from sympy import Expr, Integer, Pow, Rational, S, expand, perfect_power, pi, sqrt
+from sympy import Add, Expr, Integer, Mul, Pow, Rational, S, expand, perfect_power, pi, sqrt
 
 Params = tuple[Expr, ...]
 
@@ -95,6 +95,31 @@ def _integer_power(n: int, exponent: Any) -> Any:
     if found:
         return Integer(found[0]) ** (found[1] * exponent)
     return Integer(n) ** exponent
+
+
+def spread(expr: Any) -> Any:
+    """Multiply out only those sums that hold functions or symbolic powers.
+
+    Rational coefficients keep their factors, so that nothing has to be factored again.
+    """
+    if expr.is_Add:
+        return Add(*(spread(t) for t in expr.args))
+    if not expr.is_Mul:
+        return expr
+    for i, f in enumerate(expr.args):
+        if f.is_Add and not _algebraic(f):
+            rest = Mul(*expr.args[:i], *expr.args[i + 1 :])
+            return Add(*(spread(rest * t) for t in f.args))
+    return expr
+
+
+def _algebraic(expr: Any) -> bool:
+    """Whether only numbers, symbols and rational powers occur."""
+    if expr.is_Symbol or expr.is_number:
+        return True
+    if expr.is_Pow:
+        return bool(expr.exp.is_Rational) and _algebraic(expr.base)
+    return bool(expr.is_Add or expr.is_Mul) and all(_algebraic(a) for a in expr.args)
 
 
 def normalise(factors: Iterable[tuple[Expr, Rational, int]]) -> Normalised:

@@ -15,7 +15,6 @@ from sympy import (
     cancel,
     erf,
     erfc,
-    expand_mul,
     factor,
     factor_terms,
     fraction,
@@ -24,21 +23,22 @@ from sympy import (
 )
 
 from ..gamma.shortest import collect_powers, shortest_quotient
-from .signature import is_nonpositive_int, power
+from .signature import is_nonpositive_int, power, spread
 
 
 def tidy(expr: Any) -> Any:
     """The form in which F(z) is returned."""
-    terms = Add.make_args(expand_mul(expr))
+    terms = Add.make_args(spread(expr))
     if len(terms) == 1:
-        return _product(terms[0])
+        coefficient, rest = _parted(_product(terms[0]))
+        return _product(_gathered([coefficient]) * rest)
     groups: dict[Any, list[Any]] = {}
     for term in terms:
         coefficient, rest = _parted(_product(term))
         groups.setdefault(rest, []).append(coefficient)
     sums = {rest: _gathered(parts) for rest, parts in groups.items()}
     _complement(sums)
-    total = Add(*(coefficient * rest for rest, coefficient in sums.items()))
+    total = Add(*(_product(coefficient * rest) for rest, coefficient in sums.items()))
     return factor_terms(total) if total.is_Add and len(total.args) < 12 else total
 
 
@@ -88,14 +88,22 @@ def _parted(term: Any) -> tuple[Any, Any]:
 
 def _gathered(parts: list[Any]) -> Any:
     total = Add(*parts)
-    if len(parts) == 1:
-        return total
     size = total.count_ops()
-    if any(p.base.is_Add for p in total.atoms(Pow)) and size < 250:
-        joined = factor(cancel(together(total)))
-        if joined.count_ops() < size:
-            return joined
-    return total
+    if size > 250 or not any(p.base.is_Add for p in total.atoms(Pow)):
+        return total
+    top, bottom = fraction(cancel(together(total)))
+    bottom = factor(bottom)
+    radicals = _radicals(total)
+    best = total
+    for candidate in (factor_terms(top) / bottom, factor(top) / bottom):
+        # a split radical, sqrt(1 - z**2) as sqrt(1 - z)*sqrt(1 + z), would change its branch for z > 1
+        if candidate.count_ops() <= size and _radicals(candidate) <= radicals:
+            best, size = candidate, candidate.count_ops()
+    return best
+
+
+def _radicals(expr: Any) -> set[Any]:
+    return {p.base for p in expr.atoms(Pow) if p.base.is_Add and not p.exp.is_Integer}
 
 
 def _complement(sums: dict[Any, Any]) -> None:

@@ -17,7 +17,6 @@ from sympy import (
     binomial,
     erfc,
     exp,
-    expand_mul,
     expint,
     factor,
     factorial,
@@ -28,7 +27,7 @@ from sympy import (
 )
 
 from .contiguous import _Walker
-from .signature import as_int, power
+from .signature import as_int, power, spread
 
 HALF = S.Half
 
@@ -112,7 +111,7 @@ def tricomi(a: Expr, b: Expr, z: Symbol) -> Expr | None:
     """U(a, b, z) by name, or None."""
     found = _either(a, b, z)
     if found is not None:
-        return expand_mul(found)
+        return spread(found)
     for base in _bases(a, b):
         moves = (as_int(a - base[0]), as_int(b - base[1]))
         if moves[0] is None or moves[1] is None or abs(moves[0]) + abs(moves[1]) > 8:
@@ -120,11 +119,11 @@ def tricomi(a: Expr, b: Expr, z: Symbol) -> Expr | None:
         value = _either(*base, z)
         if value is None:
             continue
-        value = expand_mul(value)
+        value = spread(value)
         pair = _walk(base, moves[0], moves[1], z)
         if pair is not None:
-            theta = expand_mul(z * value.diff(z))
-            return expand_mul(factor(pair[0]) * value + factor(pair[1]) * theta)
+            theta = spread(z * value.diff(z))
+            return spread(factor(pair[0]) * value + factor(pair[1]) * theta)
     return None
 
 
