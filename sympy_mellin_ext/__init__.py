@@ -1,6 +1,7 @@
 """Closed forms, with their exact parameter regions, for half-line integrals in SymPy."""
 from .closed_form import ClosedForm
 from .integrate import closed_form, integrate, mellin, principal_value
+from .inverse_transform import inverse_transform
 from .kernels import register_kernel, unregister_kernel
 from .pipelines import disable, enable, evaluate_integrals, extend_sympy
 from .problem import Refusal
@@ -18,6 +19,7 @@ __all__ = [
     "evaluate_integrals",
     "extend_sympy",
     "integrate",
+    "inverse_transform",
     "master_theorem",
     "mellin",
     "principal_value",

@@ -11,6 +11,7 @@ from sympy.logic.boolalg import Boolean
 from .gamma import GammaProduct
 
 if TYPE_CHECKING:
+    from .expansions import Asymptotics, ParameterSeries
     from .verify import Verification
 
 
@@ -118,6 +119,67 @@ class ClosedForm:
             self.integrand, self.limits[0], self._general(), condition=self.condition, digits=digits,
             points=points, given=self.given,
         )  # fmt: skip
+
+    def at(self, **values: Any) -> Expr:
+        """The exact value at special parameters, also where ``value`` reads 0*oo or oo - oo.
+
+        The strategies are asked anew with the values in the integrand; where none knows it, the value is the
+        constant term of the Laurent series in a perturbation of the parameters (the same in two directions).
+
+        Parameters
+        ----------
+        **values :
+            Numbers or expressions by the parameters' names.
+
+        Raises
+        ------
+        Refusal
+            If the point lies outside the region, or no closed form is known there.
+        ValueError
+            If there is no parameter of this name.
+
+        Examples
+        --------
+        >>> from sympy import oo, symbols
+        >>> from sympy_mellin_ext import closed_form
+        >>> x, a, b = symbols('x a b', positive=True)
+        >>> s = symbols('s', real=True)
+        >>> closed_form(x**(s - 1)/((x + a)*(x + b)), (x, 0, oo)).at(a=b, s=1)
+        1/b
+        """
+        from .expansions import value_at
+
+        return value_at(self, values)
+
+    def laurent(self, parameter: Symbol, point: Any, order: int) -> ParameterSeries:
+        """The Laurent series of ``value`` in a parameter; see :func:`parameter_series`.
+
+        Examples
+        --------
+        >>> from sympy import oo, symbols
+        >>> from sympy_mellin_ext import closed_form
+        >>> x, eps = symbols('x epsilon', positive=True)
+        >>> print(closed_form(x**(eps - 1)/(1 + x)**2, (x, 0, oo)).laurent(eps, 0, 1))
+        1/epsilon - 1 + pi**2*epsilon/6 + O(epsilon**2)
+        """
+        from .expansions import parameter_series
+
+        return parameter_series(self.value, parameter, point, order)
+
+    def expansion(self, at: Any = 0, order: Any = 4) -> Asymptotics | None:
+        """The expansion of f at 0 or oo from its transform ``int_0^oo x**(s-1) f(x) dx``; see :func:`expansion`.
+
+        Examples
+        --------
+        >>> from sympy import besselj, oo, symbols
+        >>> from sympy_mellin_ext import mellin
+        >>> x, s = symbols('x s', positive=True)
+        >>> print(mellin(besselj(0, x)**2, x, s).expansion(at=0, order=4))
+        1 - x**2/2 + 3*x**4/32 + o(x**(4))
+        """
+        from .expansions.asymptotics import of_closed_form
+
+        return of_closed_form(self, at, order)
 
     def _general(self) -> Expr:
         branches = [(value, where) for where, value in self.special]
