@@ -69,12 +69,12 @@ def left_series(sig: Signature, w: Symbol) -> ResidueSeries | None:
         return None  # a left and a right pole coincide: no contour
     head: Any = S.Zero
     tails: list[Tail] = []
-    todo = list(sig.left)
-    while todo:
-        a0 = todo[0]
+    waiting = list(sig.left)
+    while waiting:
+        a0 = waiting[0]
         offsets = []
         rest = []
-        for a in todo:
+        for a in waiting:
             n = as_int(a - a0)
             if n is not None:
                 offsets.append(n)
@@ -82,7 +82,7 @@ def left_series(sig: Signature, w: Symbol) -> ResidueSeries | None:
                 return None  # a double pole at a place that depends on a symbol
             else:
                 rest.append(a)
-        todo = rest
+        waiting = rest
         base = a0 + min(offsets)
         starts = [n - min(offsets) for n in offsets]
         ends = [n for c in sig.left_den if (n := as_int(c - base)) is not None]
