@@ -16,6 +16,7 @@ from sympy import (
     cos,
     cosh,
     coth,
+    count_ops,
     csch,
     erf,
     erfc,
@@ -99,10 +100,12 @@ def gaussian(problem: Problem, f: Expr, x: Symbol) -> ClosedForm | None:
     if not any(type(node) is exp and node.has_free(x) for node in preorder_traversal(f)):
         return None
     parts = f.args if type(f) is Mul else (f,)
-    exponent, waves, errors, rest = S.Zero, [], [], []
+    exponent, waves, errors, rest, front = S.Zero, [], [], [], S.One
     for part in parts:
         kind = type(part)
-        if kind is exp:
+        if not part.has_free(x):
+            front = front * part
+        elif kind is exp:
             exponent += part.args[0]
         elif kind is Pow and type(part.base) is exp and not part.exp.has_free(x):
             exponent += part.base.args[0] * part.exp
@@ -126,7 +129,8 @@ def gaussian(problem: Problem, f: Expr, x: Symbol) -> ClosedForm | None:
     if problem.facts.sign(real_part(a)) in (0, -1):
         return problem.refuse("diverges", "the square does not decay")
     if errors:
-        return _error_function(problem, polynomial, a, b, c, errors[0], x)
+        answer = _error_function(problem, polynomial, a, b, c, errors[0], x)
+        return None if answer is None else answer.times(front)
     modes = [(S.One, S.Zero)]
     for wave in waves:
         linear = _coefficients(wave.args[0], x, 1)
@@ -139,6 +143,7 @@ def gaussian(problem: Problem, f: Expr, x: Symbol) -> ClosedForm | None:
         value = _one_wave(polynomial, a, b, c, waves[0], x)
     else:
         value = Add(*(m * _moments(polynomial, a, b + S.ImaginaryUnit * w, c) for m, w in modes))
+    value = front * value
     condition = Region(problem.facts).positive(real_part(a)).to_boolean()
     return ClosedForm(
         value,
@@ -219,7 +224,10 @@ def _moments(polynomial: list[Expr], a: Expr, b: Expr, c: Expr) -> Expr:
     if not exponent.is_number:
         exponent = exponent.expand() if exponent.expand().count_ops() < exponent.count_ops() else exponent
         exponent = exponent.cancel() if exponent.is_Add else exponent
-    return sqrt(pi) / sqrt(a) * Add(*total) * exp(exponent)
+    moments = Add(*total)
+    if moments.is_Add:
+        moments = min(moments, moments.expand(), key=count_ops)
+    return sqrt(pi) / sqrt(a) * moments * exp(exponent)
 
 
 def _one_wave(polynomial: list[Expr], a: Expr, b: Expr, c: Expr, wave: Expr, x: Symbol) -> Expr:
