@@ -5,7 +5,8 @@ from .inverse_transform import inverse_transform
 from .kernels import register_kernel, unregister_kernel
 from .pipelines import disable, enable, evaluate_integrals, extend_sympy
 from .problem import Refusal
-from .strategies import register, strategies, unregister
+from .strategies import register, unregister
+from .strategies import strategies as registered_strategies
 from .theorem import master_theorem
 
 __version__ = "0.1.0"
@@ -25,7 +26,7 @@ __all__ = [
     "principal_value",
     "register",
     "register_kernel",
-    "strategies",
+    "registered_strategies",
     "unregister",
     "unregister_kernel",
 ]

@@ -14,7 +14,7 @@ from sympy_mellin_ext import (
     mellin,
     register,
     register_kernel,
-    strategies,
+    registered_strategies,
     unregister,
     unregister_kernel,
 )
@@ -48,11 +48,11 @@ class Broken:
 
 @pytest.fixture
 def names():
-    before = strategies()
-    yield lambda: [strategy.name for strategy in strategies()]
-    for strategy in set(strategies()) - set(before):
+    before = registered_strategies()
+    yield lambda: [strategy.name for strategy in registered_strategies()]
+    for strategy in set(registered_strategies()) - set(before):
         unregister(strategy.name)
-    assert strategies() == before
+    assert registered_strategies() == before
 
 
 def test_register_in_its_place(names):
@@ -143,7 +143,7 @@ def test_registry_from_many_threads(names):
             for _ in range(30):
                 register(Mine(sin))
                 register_kernel(Row(function, ROW.transform, ""))
-                assert f"moments {number}" in [strategy.name for strategy in strategies()]
+                assert f"moments {number}" in [strategy.name for strategy in registered_strategies()]
                 assert function in rows()
                 unregister(f"moments {number}")
                 unregister_kernel(function)
@@ -195,10 +195,10 @@ import sys, warnings
 import sympy_mellin_ext
 assert "plug_in_of_the_test" not in sys.modules, "plug-ins are loaded at import time"
 from sympy import Symbol, oo
-from sympy_mellin_ext import closed_form, strategies
+from sympy_mellin_ext import closed_form, registered_strategies
 with warnings.catch_warnings(record=True) as caught:
     warnings.simplefilter("always")
-    names = [s.name for s in strategies()]
+    names = [s.name for s in registered_strategies()]
     from plug_in_of_the_test import Bump, Peak
     x = Symbol("x", positive=True)
     print(closed_form(x**3*Bump(2*x), (x, 0, oo)))
