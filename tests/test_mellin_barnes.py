@@ -249,6 +249,15 @@ def test_edge_where_frequencies_meet() -> None:
     assert converge(f.subs(s, Rational(3, 2))) == (Ne(a, b) & (mu + nu > -Rational(3, 2)))
 
 
+def test_branches_meet_where_the_integral_is_continuous() -> None:
+    # DLMF 10.22.60-type: the value at a = b is the common limit
+    value = solved(sin(a*x)*besselj(0, b*x)/x).value
+    for u, v, expected in ((2, 1, pi/2), (1, 2, pi/6), (1, 1, pi/2)):
+        assert value.subs({a: u, b: v}) == expected
+    # an elliptic integral that has no value there as a formula
+    assert solved(besselj(1, a*x)*besselj(1, b*x)/x**2).condition == Ne(a, b)
+
+
 SUMS = [
     # terms that diverge one by one
     (exp(-p*x)*(besselj(0, b*x) - 1)/x, log(2*p/(p + sqrt(p**2 + b**2))), "DLMF 10.22.49, integrated in p"),

@@ -14,7 +14,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 
-from sympy import Add, Eq, Expr, Max, Min, Ne, S, Symbol, oo
+from sympy import Add, Eq, Expr, Gt, Lt, Max, Min, Ne, Piecewise, S, Symbol, oo
 from sympy.core.sorting import default_sort_key
 from sympy.logic.boolalg import Boolean
 
@@ -87,6 +87,11 @@ def closed_form_of_products(problem: Problem, terms: Sequence[Term], name: str) 
     if value.has(S.NaN, S.ComplexInfinity, S.Infinity, S.NegativeInfinity):
         return problem.refuse("diverges", "the formula is not finite")
     special, region = _special_values(problem, gaps, converged.region)
+    for pieces in sorted(value.atoms(Piecewise), key=default_sort_key):
+        where = pieces.args[-1][1]
+        if isinstance(where, Lt | Gt):
+            # neither branch has a value where they meet
+            region = region.holds(Ne(where.lhs, where.rhs))
     condition = region.to_boolean()
     if condition is S.false:
         return problem.refuse("empty region", "the conditions contradict one another")

@@ -9,7 +9,9 @@ from sympy import (
     Derivative,
     Dummy,
     Expr,
+    Gt,
     I,
+    Lt,
     Piecewise,
     Pow,
     S,
@@ -188,6 +190,21 @@ def _pair(term: Term, facts: Facts, region: Region) -> Expr | None:
     for kernel, scale in zip((first, second), scales, strict=True):
         if isinstance(scale, Dummy) and value is not None:
             value = _at_true_scale(value, scale, kernel, region)
+    return _closed(value, region) if isinstance(value, Piecewise) else value
+
+
+def _closed(value: Piecewise, region: Region) -> Expr:
+    """Two branches ``l < r`` and ``l > r``, the second one closed where the integral is continuous at l = r."""
+    if len(value.args) != 2:
+        return value
+    (first, where), (second, there) = value.args
+    if not isinstance(where, Lt | Gt) or region.nonzero(where.lhs - where.rhs):
+        return value
+    for branch, other, condition in ((second, first, where), (first, second, there)):
+        # the convergence at l = r makes both branches meet there
+        side = where.lhs if where.lhs.is_Symbol else where.rhs
+        if side.is_Symbol and not branch.subs(side, where.rhs if side == where.lhs else where.lhs).has(*_BAD):
+            return Piecewise((other, condition), (branch, True))
     return value
 
 
