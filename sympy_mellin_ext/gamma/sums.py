@@ -1,7 +1,7 @@
 """Sums of closed forms written shorter: logarithms joined, common factors taken out."""
 from __future__ import annotations
 
-from sympy import Add, Expr, Mul, Pow, S, cancel, count_ops, factor, factor_terms, log
+from sympy import Add, Expr, I, Mul, Pow, S, cancel, count_ops, factor, factor_terms, log, preorder_traversal
 
 # Larger sums are left as they are: the gain would not pay for the search.
 _MOST_TERMS = 12
@@ -19,6 +19,8 @@ def shortest_sum(total: Expr) -> Expr:
     >>> shortest_sum(-log(b)/(a - b) - log(a)/(b - a))
     log(a/b)/(a - b)
     """
+    if total.is_Mul:
+        return _opened(total)
     if not total.is_Add or len(total.args) > _MOST_TERMS:
         return total
     total = Add(*(_same_signs(t) for t in total.args))
@@ -29,10 +31,49 @@ def shortest_sum(total: Expr) -> Expr:
     if total.is_Add:
         symbols = sorted(total.free_symbols, key=str)
         if symbols and len(total.args) <= _MOST_FRACTIONS and total.is_rational_function(*symbols):
-            candidates.append(factor(cancel(total)))
+            candidates.append(_conjugates_joined(factor(cancel(total))))
         else:
             candidates.append(factor_terms(joined, sign=True))
     return min(candidates, key=count_ops)
+
+
+def _opened(product: Expr) -> Expr:
+    """``front*(a + b)`` multiplied out where that is shorter: ``(2*a + 1/(2*a))/(2*a) = 1 + 1/(4*a**2)``."""
+    sums = [f for f in product.args if f.is_Add]
+    if len(sums) != 1 or len(sums[0].args) > _MOST_TERMS:
+        return product
+    front = Mul(*(f for f in product.args if f is not sums[0]))
+    return min(product, Add(*(front * t for t in sums[0].args)), key=count_ops)
+
+
+def _conjugates_joined(product: Expr) -> Expr:
+    """``(a + I*b)*(a - I*b) = a**2 + b**2`` in a product, a and b any expressions, where that is shorter."""
+    if not product.has(I):
+        return product
+    factors = list(Mul.make_args(product))
+    candidates = [product]
+    for i, first in enumerate(factors):
+        f, e = first.as_base_exp()
+        if not f.is_Add or not e.is_Integer:
+            continue
+        rest = [h for h in factors if h is not first]
+        turned = (I * f).expand()
+        candidates += [Mul(*rest, I**-e, Pow(turned, e)), Mul(*rest, (-I) ** -e, Pow(-turned, e))]
+        for second in factors[:i]:
+            g, n = second.as_base_exp()
+            if e != n or not g.is_Add:
+                continue
+            others = [h for h in rest if h is not second]
+            for sign in (1, -1):  # the factors may differ by a sign from conjugates
+                middle, half = ((f + sign * g) / 2).expand(), ((f - sign * g) / 2).expand()
+                for joined in (middle**2 - half**2, middle**2 + (I * half).expand() ** 2):
+                    candidates.append(Mul(S(sign) ** e, *others, Pow(joined, e)))
+    best = min(candidates, key=_length)
+    return product if best is product else _conjugates_joined(best)
+
+
+def _length(expr: Expr) -> int:
+    return sum(1 for _ in preorder_traversal(expr))
 
 
 def _same_signs(term: Expr) -> Expr:
