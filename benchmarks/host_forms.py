@@ -19,9 +19,13 @@ _TRIES = 60
 class _Relax(ast.NodeTransformer):
     def visit_Assert(self, node: ast.Assert) -> ast.AST:
         test = node.test
-        if isinstance(test, ast.Compare) and len(test.ops) == 1 and isinstance(test.ops[0], ast.Eq):
-            call = ast.Call(ast.Name("_same_value", ast.Load()), [test.left, test.comparators[0]], [])
-            return ast.copy_location(ast.Assert(call, node.msg), node)
+        if isinstance(test, ast.Compare) and all(isinstance(op, ast.Eq) for op in test.ops):
+            sides = [test.left, *test.comparators]
+            calls = [
+                ast.Call(ast.Name("_same_value", ast.Load()), [left, right], [])
+                for left, right in zip(sides, sides[1:], strict=False)
+            ]
+            return ast.copy_location(ast.Assert(ast.BoolOp(ast.And(), calls), node.msg), node)
         return node
 
 

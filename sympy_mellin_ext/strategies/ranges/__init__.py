@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from dataclasses import replace
 
-from sympy import S, oo, sinc
+from sympy import DiracDelta, S, SingularityFunction, oo, sinc
 from sympy.logic.boolalg import And
 
 from ...closed_form import ClosedForm
@@ -29,6 +29,8 @@ class Ranges:
             return ClosedForm(S.Zero, strategy=self.name)
         if lower.has_free(problem.variable) or upper.has_free(problem.variable):
             return problem.refuse("range", "the ends depend on the variable")
+        if problem.integrand.has(DiracDelta, SingularityFunction):
+            return problem.refuse("no kernel", "a distribution may sit where the range is cut")
         if (lower is oo or upper is -oo) or self._reversed(problem):
             answer = self._forward(problem.changed(problem.integrand, upper, lower))
             return None if answer is None else added(problem, [(S.NegativeOne, answer)])
