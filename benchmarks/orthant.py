@@ -32,7 +32,8 @@ def _child(entry: Entry, seconds: float, ours: bool, pipe: Connection) -> None:
 def measured(entry: Entry, seconds: float, ours: bool) -> tuple[str, float]:
     """(outcome, processor seconds) of one call, in a forked process that is ended if it does not come back."""
     receiver, sender = multiprocessing.Pipe(duplex=False)
-    process = multiprocessing.get_context("fork").Process(target=_child, args=(entry, seconds, ours, sender), daemon=True)
+    context = multiprocessing.get_context("fork")
+    process = context.Process(target=_child, args=(entry, seconds, ours, sender), daemon=True)
     process.start()
     sender.close()
     try:

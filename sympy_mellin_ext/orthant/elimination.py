@@ -21,7 +21,7 @@ from ..closed_form import ClosedForm, Step
 from ..problem import Problem
 from ..region import Facts, real_part
 from ..strategies.registry import attempt
-from .integrand import Product, above, below
+from .integrand import Product, Special, above, below
 from .linear import fraction, particular, rational
 from .outcome import Outcome
 from .polynomial import Monomial, Polynomial, collected, product
@@ -120,6 +120,8 @@ def _directions(prod: Product) -> Iterator[Direction]:
 
 
 Parts = dict[Expr, Polynomial]  # degree in y -> coefficient polynomial in the other variables
+# the exponential (None), the exponent of a sum, or a kernel, with its parts
+Moving = tuple[Special | Expr | None, Parts]
 
 
 def _parts(poly: Polynomial, y: int, w: Direction) -> Parts:
@@ -139,9 +141,9 @@ def _along(prod: Product, variables: Sequence[Symbol], facts: Facts, w: Directio
     others = tuple(x for i, x in enumerate(variables) if i != y)
     exponent = _parts(prod.exponent, y, w)
     rest = replace(rest, exponent=exponent.pop(S.Zero, ()))
-    moving: list[tuple[str, object, Parts]] = []
+    moving: list[Moving] = []
     if exponent:
-        moving.append(("exp", None, exponent))
+        moving.append((None, exponent))
     for base, p in prod.sums:
         parts = _parts(base, y, w)
         if len(parts) == 1:
@@ -153,13 +155,13 @@ def _along(prod: Product, variables: Sequence[Symbol], facts: Facts, w: Directio
                 return None
             rest = added
         else:
-            moving.append(("sum", p, parts))
+            moving.append((p, parts))
     for special in prod.specials:
         parts = _parts(special.argument, y, w)
         if set(parts) == {S.Zero}:
             rest = replace(rest, specials=(*rest.specials, replace(special, argument=parts[S.Zero])))
         else:
-            moving.append((special.name, special, parts))
+            moving.append((special, parts))
     if not moving:
         return None
     told = " ".join(f"{x}**({rational(c / w[y])})" for x, c in zip(variables, w, strict=True) if c)
@@ -176,10 +178,10 @@ def _with_sum(rest: Product, poly: Polynomial, p: Expr, facts: Facts) -> Product
 
 
 def _single(
-    item: tuple[str, object, Parts], rest: Product, power: Expr, others: tuple[Symbol, ...], facts: Facts, told: str
+    item: Moving, rest: Product, power: Expr, others: tuple[Symbol, ...], facts: Facts, told: str
 ) -> Reduction | None:
     """One factor scales."""
-    name, data, parts = item
+    data, parts = item
     booleans: list[Boolean] = []
     if isinstance(data, Expr):
         p = data
@@ -195,7 +197,8 @@ def _single(
             return None
         positive = [real_part(beta), real_part((p - beta).expand())]
         factor = gamma(beta) * gamma((p - beta).expand()) / gamma(p) / m
-        return Reduction(left, others, factor, tuple(positive), (), _step(told, "a power of a sum", power), "DLMF 5.12.3")
+        step = _step(told, "a power of a sum", power)
+        return Reduction(left, others, factor, tuple(positive), (), step, "DLMF 5.12.3")
     if len(parts) != 1:
         return None
     ((m, inner),) = parts.items()
@@ -229,15 +232,15 @@ def _single(
             _step(told, "an exponential", power), "DLMF 5.9.1",
         )  # fmt: skip
     special = data
-    strip = special.strip()  # type: ignore[attr-defined]
-    if strip is None or special.oscillates:  # type: ignore[attr-defined]
+    strip = special.strip()
+    if strip is None or special.oscillates:
         return None
     left = _with_sum(rest, inner, beta, facts)
     if left is None:
         return None
-    positive = [*above(beta, strip[0]), *below(beta, strip[1]), *special.conditions()]  # type: ignore[attr-defined]
-    factor = special.product.at(beta) / size  # type: ignore[attr-defined]
-    return Reduction(left, others, factor, tuple(positive), (), _step(told, name, power), special.source)  # type: ignore[attr-defined]
+    positive = [*above(beta, strip[0]), *below(beta, strip[1]), *special.conditions()]
+    factor = special.product.at(beta) / size
+    return Reduction(left, others, factor, tuple(positive), (), _step(told, special.name, power), special.source)
 
 
 def _step(told: str, what: str, power: Expr) -> Step:
@@ -254,7 +257,7 @@ def _indefinite(rest: Product, poly: Polynomial, p: Expr) -> Product:
 
 
 def _liouville(
-    moving: Sequence[tuple[str, object, Parts]],
+    moving: Sequence[Moving],
     rest: Product,
     power: Expr,
     others: tuple[Symbol, ...],
@@ -262,15 +265,15 @@ def _liouville(
     told: str,
 ) -> Reduction | None:
     """Several factors are functions of ``r = y*A**(1/m)`` alone: a one-dimensional integral times a power of A."""
-    degrees = sorted({d for _, _, parts in moving for d in parts if d is not S.Zero}, key=lambda d: (abs(d), d))
+    degrees = sorted({d for _, parts in moving for d in parts if d is not S.Zero}, key=lambda d: (abs(d), d))
     m = degrees[0]
-    shape = next(parts[m] for _, _, parts in moving if m in parts)
+    shape = next(parts[m] for _, parts in moving if m in parts)
     head = shape[0].coefficient
     unit = tuple(Monomial(c / head, e) for c, e in shape)
     powers: dict[Expr, Polynomial] = {S.One: unit}
     r = Dummy("r", positive=True)
     factors = [Pow(r, power - 1)]
-    for _, data, parts in moving:
+    for data, parts in moving:
         argument: list[Expr] = []
         for d, inner in sorted(parts.items(), key=lambda part: part[0]):
             if d is S.Zero:
@@ -289,9 +292,9 @@ def _liouville(
         elif isinstance(data, Expr):
             factors.append(Pow(total, -data))
         else:
-            if data.oscillates:  # type: ignore[attr-defined]
+            if data.oscillates:
                 return None
-            factors.append(data.build(total))  # type: ignore[attr-defined]
+            factors.append(data.build(total))
     beta = (power / m).expand()
     left = _with_sum(rest, unit, beta, facts)
     if left is None:

@@ -9,7 +9,7 @@ from sympy import Expr, Mul, Pow, S, Symbol, exp
 from ..gamma import GammaProduct
 from ..kernels.elementary import LOG1P
 from ..region import Facts, real_part
-from .polynomial import Monomial, Polynomial, as_expr, base_and_power, collected, normalised
+from .polynomial import Polynomial, as_expr, base_and_power, collected, normalised, order
 
 
 @dataclass(frozen=True)
@@ -107,14 +107,13 @@ class Product:
         whole = bool(p.is_integer)
         known = [facts.sign(c) if c.is_extended_real else None for c, _ in poly]
         if 1 not in known:
-            if not whole:
-                if len(poly) > 1 or poly[0].coefficient.is_extended_real:
-                    return None
+            if not whole and (len(poly) > 1 or poly[0].coefficient.is_extended_real):
+                return None
             place = 0
         else:
             place = known.index(1)
         head, base = normalised((poly[place], *poly[:place], *poly[place + 1 :]))
-        base = (base[0], *sorted(base[1:], key=lambda m: poly_key(m)))
+        base = (base[0], *sorted(base[1:], key=order))
         outside = head.power((-p).expand())
         result = replace(
             self,
@@ -187,12 +186,6 @@ def _log1p(z: Expr) -> Expr:
     from sympy import log
 
     return log(1 + z)
-
-
-def poly_key(m: Monomial) -> tuple[tuple[bool, object], ...]:
-    from .polynomial import _order
-
-    return _order(m)
 
 
 def above(expr: Expr, bounds: Sequence[Expr]) -> list[Expr]:

@@ -45,7 +45,9 @@ def _clear(table: list[list[Fraction]], at: int, column: int) -> None:
             table[i] = [v - factor * u for v, u in zip(row, table[at], strict=True)]
 
 
-def reduced(matrix: Sequence[Sequence[Fraction]], columns: Sequence[int]) -> tuple[list[list[Fraction]], Fraction] | None:
+def reduced(
+    matrix: Sequence[Sequence[Fraction]], columns: Sequence[int]
+) -> tuple[list[list[Fraction]], Fraction] | None:
     """``(M, det)``: the inverse M of the square part in these columns, and its determinant; None if singular."""
     n = len(matrix)
     table = [

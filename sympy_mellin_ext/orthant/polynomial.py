@@ -45,10 +45,10 @@ def collected(monomials: Iterable[Monomial]) -> Polynomial:
             total = total.expand()
         if total is not S.Zero:
             found.append(Monomial(total, e))
-    return tuple(sorted(found, key=_order))
+    return tuple(sorted(found, key=order))
 
 
-def _order(m: Monomial) -> tuple[tuple[bool, object], ...]:
+def order(m: Monomial) -> tuple[tuple[bool, object], ...]:
     return tuple((not a.is_Rational, (a, "") if a.is_Rational else (0, str(a))) for a in m.exponents)
 
 
@@ -127,8 +127,7 @@ def normalised(poly: Polynomial) -> tuple[Monomial, Polynomial]:
     """``(m, p)`` with poly = m*p where p begins with the monomial 1."""
     first = poly[0]
     inverse = first.power(S.NegativeOne)
-    return first, tuple(Monomial((c / first.coefficient), tuple(a + b for a, b in zip(e, inverse.exponents, strict=True)))
-                        for c, e in poly)
+    return first, tuple(Monomial(c / first.coefficient, m.times(inverse).exponents) for m in poly for c in m[:1])
 
 
 def root(poly: Polynomial, k: int) -> Polynomial | None:

@@ -1,6 +1,7 @@
 """Ranges of several variables that are an orthant, or a simplex that Cheng-Wu's substitution turns into one.
 
-Sources: DLMF 5.14.1-2 and Whittaker and Watson (1927), section 12.5 (Dirichlet, Liouville); H. Cheng and T. T. Wu, Expanding Protons (1987),
+Sources: DLMF 5.14.1-2 and E. T. Whittaker and G. N. Watson, A Course of Modern Analysis (1927), section 12.5
+(Dirichlet, Liouville); H. Cheng and T. T. Wu, Expanding Protons (1987),
 for the freedom in the argument of the delta function.
 """
 from __future__ import annotations
@@ -9,16 +10,18 @@ from collections.abc import Sequence
 from dataclasses import replace
 from math import prod
 
-from sympy import Add, DiracDelta, Dummy, Expr, Mul, Pow, Rational, S, Symbol, expand, gamma, oo
+from sympy import Add, DiracDelta, Dummy, Expr, Mul, Pow, S, Symbol, expand, gamma, oo
 
 from ..closed_form import ClosedForm, Step
 from ..problem import Problem
 from ..region import Facts, Region, real_part
 from ..strategies.registry import attempt
+from ..strategies.tidy import tidy
 from .elimination import LIOUVILLE
 from .polynomial import read_monomial, read_polynomial
 from .strategy import NAME, integrate_orthant
 
+_CHENG_WU = "Cheng and Wu, Expanding Protons (1987)"
 Limits = Sequence[tuple[Symbol, Expr, Expr]]
 
 
@@ -47,7 +50,8 @@ def solve_several(f: Expr, limits: Limits, facts: Facts) -> ClosedForm | None:
     if deltas:
         if len(deltas) > 1 or len(deltas[0].args) != 1:
             return None
-        answer = _delta(Mul(*(a for a in Mul.make_args(inside) if a is not deltas[0])), deltas[0].args[0], names, uppers, facts)
+        rest = Mul(*(a for a in Mul.make_args(inside) if a is not deltas[0]))
+        answer = _delta(rest, deltas[0].args[0], names, uppers, facts)
     elif all(b is oo for b in uppers):
         answer = integrate_orthant(inside, names, facts) or _dirichlet(inside, names, oo, facts)
     else:
@@ -93,10 +97,11 @@ def _weights(names: Sequence[Symbol], uppers: Sequence[Expr], facts: Facts) -> l
         moving = [i for i, a in enumerate(exponents) if a is not S.Zero]
         if not moving:
             one = c
-        elif len(moving) == 1 and exponents[moving[0]].is_Rational and exponents[moving[0]] > 0 and moving[0] not in found:
-            found[moving[0]] = (-c, exponents[moving[0]])
-        else:
+            continue
+        place, p = moving[0], exponents[moving[0]]
+        if len(moving) > 1 or not (p.is_Rational and p > 0) or place in found:
             return None
+        found[place] = (-c, p)
     if len(found) != len(names) - 1 or 0 in found or facts.sign(one) != 1:
         return None
     if any(facts.sign(k) != 1 for k, _ in found.values()):
@@ -144,8 +149,6 @@ def _dirichlet(f: Expr, t: Sequence[Symbol], upper: Expr, facts: Facts) -> Close
     front = coefficient * Mul(*(gamma(a) for a in alphas)) / gamma(total)
     step = Step("Dirichlet's integral: a function of the sum of the variables", LIOUVILLE)
     answer = inner.times(front)
-    from ..strategies.tidy import tidy
-
     return replace(
         answer, value=tidy(answer.value), condition=region.to_boolean(), strip=None, strategy=NAME,
         steps=(step, *inner.steps), sources=(LIOUVILLE, *inner.sources),
@@ -174,8 +177,8 @@ def _projective(
     answer = integrate_orthant(moved, [v for v in left if v is not fixed], facts)
     if answer is None:
         return None
-    step = Step(f"simplex in {len(t)} variables turned into an orthant, one variable fixed at 1", "Cheng and Wu (1987)")
-    return replace(answer, steps=(step, *answer.steps), sources=(*answer.sources, "Cheng and Wu, Expanding Protons (1987)"))
+    step = Step(f"simplex in {len(t)} variables turned into an orthant, one variable fixed at 1", _CHENG_WU)
+    return replace(answer, steps=(step, *answer.steps), sources=(*answer.sources, _CHENG_WU))
 
 
 def _homogenised(f: Expr, t: Sequence[Symbol], y: dict[Symbol, Expr], total: Expr) -> Expr | None:
@@ -262,10 +265,13 @@ def _delta(f: Expr, argument: Expr, names: Sequence[Symbol], uppers: Sequence[Ex
         g = g.subs(u, 1)
         if not rest:
             return None
-        answer = integrate_orthant(g, rest, facts) if len(rest) > 1 else attempt(Problem(g, rest[0], facts=facts, depth=1))
+        if len(rest) > 1:
+            answer = integrate_orthant(g, rest, facts)
+        else:
+            answer = attempt(Problem(g, rest[0], facts=facts, depth=1))
     else:
         answer = _projective(g, list(t.values()), [*t.values(), *rest], facts, inside=False)
     return None if answer is None else answer.times(front)
 
 
-__all__ = ["Rational", "solve_several"]
+__all__ = ["solve_several"]

@@ -125,7 +125,7 @@ class Reader:
         coefficient: Expr = S.One
         monomials: list[Monomial] = []
         specials: list[Special] = []
-        for term in inner.expand(deep=False).args if inner.is_Add or inner.is_Mul and _has_sum(inner) else (inner,):
+        for term in inner.expand(deep=False).args if inner.is_Add or (inner.is_Mul and _has_sum(inner)) else (inner,):
             if not isinstance(term, Expr):
                 return None
             poly = read_polynomial(term, self.variables)

@@ -73,7 +73,7 @@ class Search:
         """The last integral, by the strategies for one variable."""
         answer = attempt(Problem(product.as_expr((x,)), x, facts=self.facts, depth=1))
         general = trinomial(product, self.facts)
-        if answer is None or general is not None and narrower(answer.condition, general, self.facts):
+        if answer is None or (general is not None and narrower(answer.condition, general, self.facts)):
             return general
         if fragile(answer.value, Region(self.facts).holds(answer.condition)):
             found = contour(product, self.facts)
