@@ -47,6 +47,7 @@ def _load() -> tuple[Strategy, ...]:
                 *ranges.STRATEGIES,  # before term-by-term integration of series over (0, 1)
                 *taylor.STRATEGIES,
                 *mellin_barnes.STRATEGIES,
+                *taylor.LATER,
                 *radical.STRATEGIES,
                 *ranges.CHANGES,
             ]
