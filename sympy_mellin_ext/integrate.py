@@ -6,11 +6,12 @@ from dataclasses import replace
 from typing import Any, NamedTuple
 
 import sympy
-from sympy import Expr, Integral, Interval, S, Symbol, Tuple, sympify
+from sympy import Expr, Integral, Interval, Piecewise, S, Symbol, Tuple, sympify
 
 from .arguments import Given, expression, relations, symbol
 from .closed_form import ClosedForm
-from .fallback import refused
+from .fallback import has_plain_antiderivative, refused
+from .plugins import report
 from .problem import Diagnosis, Problem
 from .region import Facts
 from .strategies import attempt
@@ -47,13 +48,11 @@ def integrate(f: Any, *limits: Any, given: Given = (), **hints: Any) -> Any:
     """
     if all(name == "conds" or name in STOCK_METHODS for name in hints):
         outcome = try_strategies(f, limits, given, hints)
-        if outcome.closed is not None:
+        if outcome.settled:
             return outcome.answer
-        if outcome.divergent:
-            return outcome.unbounded()
         if outcome.question is not None:
             with refused(*outcome.question):
-                return sympy.integrate(f, *limits, **hints)
+                return outcome.judged(sympy.integrate(f, *limits, **hints))
     return sympy.integrate(f, *limits, **hints)
 
 
@@ -64,11 +63,13 @@ class Outcome(NamedTuple):
     ----------
     closed : ClosedForm, or None
     answer :
-        The closed form as ``conds`` asks for it.
+        The closed form as ``conds`` asks for it, or the infinity.
+    settled : bool
+        Whether SymPy need not be asked.
     question : tuple (f, limits), or None
         The integral as it was understood; None if it was not one of ours to begin with.
     divergent : bool
-        Whether the integral was shown to diverge; SymPy, which may step over a pole, is not asked then.
+        Whether the integral was shown to diverge.
     infinity : oo or -oo, where it diverges to that.
     diagnosis : Diagnosis, or None
         Why there is no closed form.
@@ -76,16 +77,29 @@ class Outcome(NamedTuple):
 
     closed: ClosedForm | None = None
     answer: Any = None
+    settled: bool = False
     question: tuple[Expr, tuple[Tuple, ...]] | None = None
     divergent: bool = False
     infinity: Expr | None = None
     diagnosis: Diagnosis | None = None
 
-    def unbounded(self) -> Expr:
-        """What stands for an integral that we know to diverge: oo or -oo, else the integral itself."""
-        if self.infinity is not None:
-            return self.infinity
-        assert self.question is not None
+    def judged(self, stock: Any) -> Any:
+        """SymPy's result or ours, for a question that was not settled.
+
+        A finite value of an integral that we know to diverge is not passed on: SymPy may step over a pole.
+        An answer of ours that holds for some values of the ends only yields to one without conditions.
+        """
+        if self.closed is not None:
+            return self.answer if not isinstance(stock, Expr) or stock.has(Integral, Piecewise) else stock
+        if not self.divergent or self.question is None:
+            return stock
+        value = stock[0] if isinstance(stock, tuple) else stock
+        if isinstance(value, Integral) or (
+            isinstance(value, Expr)
+            and value.has(S.Infinity, S.NegativeInfinity, S.ComplexInfinity, S.NaN)
+            and not value.has(Integral)
+        ):
+            return stock
         f, limits = self.question
         return Integral(f, *limits)
 
@@ -111,11 +125,14 @@ def try_strategies(
     except RecursionError:  # SymPy may have a shallower way
         answer = None
     if answer is None:
-        return Outcome(None, None, question, diagnosis.divergent, diagnosis.infinity, diagnosis)
+        infinity = diagnosis.infinity
+        return Outcome(None, infinity, infinity is not None, question, diagnosis.divergent, infinity, diagnosis)
     if conds == "piecewise":
-        return Outcome(answer, answer.as_piecewise(nested), question)
+        hangs_on_ends = not answer.condition.free_symbols.isdisjoint(lower.free_symbols | upper.free_symbols)
+        settled = not (hangs_on_ends and has_plain_antiderivative(f, x))
+        return Outcome(answer, answer.as_piecewise(nested), settled, question)
     bare = answer.value if conds == "none" else (answer.value, answer.condition)
-    return Outcome(answer, bare, question)
+    return Outcome(answer, bare, True, question)
 
 
 def _try_several(f: Any, limits: tuple[Any, ...], facts: Facts, conds: str) -> Outcome:
@@ -127,9 +144,12 @@ def _try_several(f: Any, limits: tuple[Any, ...], facts: Facts, conds: str) -> O
         answer = _solve_several(f, [i[1:] for i in integrals if i is not None], facts)
     except RecursionError:
         answer = None
+    except Exception as error:  # as with the strategies for one variable: the host goes on
+        report("strategy 'orthant'", error)
+        answer = None
     if answer is None:
         return Outcome()
-    return Outcome(answer, answer.value if conds == "none" else answer.as_piecewise())
+    return Outcome(answer, answer.value if conds == "none" else answer.as_piecewise(), True)
 
 
 def _solve_several(f: Expr, limits: list[tuple[Symbol, Expr, Expr]], facts: Facts) -> ClosedForm | None:

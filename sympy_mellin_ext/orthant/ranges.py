@@ -18,6 +18,7 @@ from ..region import Facts, Region, real_part
 from ..strategies.registry import attempt
 from ..strategies.tidy import tidy
 from .elimination import LIOUVILLE
+from .iterated import iterated
 from .polynomial import read_monomial, read_polynomial
 from .strategy import NAME, integrate_orthant
 
@@ -37,13 +38,19 @@ def solve_several(f: Expr, limits: Limits, facts: Facts) -> ClosedForm | None:
     >>> solve_several(x**(a - 1)*y**(b - 1)*(1 - x - y)**(c - 1), [(y, 0, 1 - x), (x, 0, 1)], Facts()).value
     gamma(a)*gamma(b)*gamma(c)/gamma(a + b + c)
     """
+    names = [x for x, _, _ in limits]
+    if len(set(names)) != len(names) or not f.is_commutative:
+        return None
+    limits = [(x, S(a), S(b)) for x, a, b in limits]
+    return _positive_ranges(f, limits, facts) or (None if f.has(DiracDelta) else iterated(f, limits, facts))
+
+
+def _positive_ranges(f: Expr, limits: Limits, facts: Facts) -> ClosedForm | None:
+    """An orthant or a simplex."""
+    if any(a is not S.Zero for _, a, _ in limits):
+        return None
     change = {x: Dummy(x.name, positive=True) for x, _, _ in limits}
-    if len(change) != len(limits) or not f.is_commutative:
-        return None
-    lowers = [S(a) for _, a, _ in limits]
-    if any(a is not S.Zero for a in lowers):
-        return None
-    uppers = [S(b).xreplace(change) for _, _, b in limits]
+    uppers = [b.xreplace(change) for _, _, b in limits]
     names = list(change.values())
     inside = f.xreplace(change)
     deltas = [a for a in Mul.make_args(inside) if type(a) is DiracDelta]
