@@ -91,7 +91,9 @@ def _logs_of(argument: Expr) -> Logs:
                 for prime, k in factorint(n).items():
                     result[S(prime)] = result.get(S(prime), S.Zero) + sign * k
         elif base.is_positive and exponent.is_Rational:
-            for b, e in _logs_of(base).items() if base.is_Rational or base.is_Mul else ((base, S.One),):
+            # a large number is its own base: it stays whole
+            inside = base != factor and (base.is_Rational or base.is_Mul)
+            for b, e in _logs_of(base).items() if inside else ((base, S.One),):
                 result[b] = result.get(b, S.Zero) + e * exponent
         else:
             result[factor] = result.get(factor, S.Zero) + 1
