@@ -2,7 +2,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from itertools import count
 from typing import NamedTuple, Protocol
 
@@ -69,10 +69,12 @@ class Piece:
     def subs(self, *replacement: Expr) -> Piece:
         """The piece with a parameter replaced in its constant and exponents."""
         old, new = replacement
-        return Piece(
-            self.constant.subs(old, new), self.power.subs(old, new), self.logs, self.product, self.ratio.subs(old, new),
-            self.wave, self.dirichlet, self.condition, self.inside, self.pole_order_inside, self.tilt,
-        )  # fmt: skip
+        return replace(
+            self,
+            constant=self.constant.subs(old, new),
+            power=self.power.subs(old, new),
+            ratio=self.ratio.subs(old, new),
+        )
 
     # -- value -----------------------------------------------------------------------------------------
 

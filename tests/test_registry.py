@@ -12,6 +12,7 @@ EXPECTED = [
     "Taylor coefficients of one argument",
     "Mellin-Barnes",
     "Taylor coefficients",
+    "sums with zeta coefficients",
     "function of a binomial",
     "change of variable",
 ]

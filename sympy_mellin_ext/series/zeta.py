@@ -69,7 +69,7 @@ class ZetaTransform:
 
 
 @dataclass(frozen=True)
-class _Kernel:
+class ZetaKernel:
     """A function of ``z`` beside its expansions: at 0 (powers 0, 1, ...) and at oo (terms in order)."""
 
     product: GammaProduct
@@ -81,15 +81,15 @@ class _Kernel:
     source: str
 
 
-def _digamma(a: Expr) -> _Kernel:
+def _digamma(a: Expr) -> ZetaKernel:
     """DLMF 5.7.4, 5.11.2."""
     product = GammaProduct.of(up=[(0, 1), (1, -1)], constant=-1)
     zero = (digamma(a), *(S.NegativeOne ** (n + 1) * zeta(n + 1, a) for n in range(1, _TERMS)))
     infinity = (((S.Zero, 1), S.One), ((S.NegativeOne, 0), a - S.Half))
-    return _Kernel(product, lambda s: 1 - s, a, zero, infinity, Integer(-2), "DLMF 5.7.4")
+    return ZetaKernel(product, lambda s: 1 - s, a, zero, infinity, Integer(-2), "DLMF 5.7.4")
 
 
-def _loggamma(a: Expr) -> _Kernel:
+def _loggamma(a: Expr) -> ZetaKernel:
     """DLMF 5.7.3, 5.11.1; the constant term at oo is log(2*pi)/2."""
     product = GammaProduct.of(up=[(0, 1), (0, -1)])
     zero = (loggamma(a), digamma(a), *(S.NegativeOne**n * zeta(n, a) / n for n in range(2, _TERMS)))
@@ -100,22 +100,22 @@ def _loggamma(a: Expr) -> _Kernel:
         ((S.Zero, 0), log(2 * pi) / 2),
         ((S.NegativeOne, 0), (a**2 - a + Rational(1, 6)) / 2),
     )
-    return _Kernel(product, lambda s: -s, a, zero, infinity, Integer(-2), "DLMF 5.7.3")
+    return ZetaKernel(product, lambda s: -s, a, zero, infinity, Integer(-2), "DLMF 5.7.3")
 
 
-def _hurwitz(p: Expr, a: Expr) -> _Kernel:
+def _hurwitz(p: Expr, a: Expr) -> ZetaKernel:
     """DLMF 25.11.10, 25.11.43."""
     product = GammaProduct.of(up=[(0, 1), (p, -1)], constant=1 / gamma(p))
     zero = tuple(S.NegativeOne**n * _rising(p, n) * zeta(p + n, a) for n in range(_TERMS))
     infinity = (((1 - p, 0), 1 / (p - 1)), ((-p, 0), S.Half - a))
-    return _Kernel(product, lambda s: p - s, a, zero, infinity, -p - 1, "DLMF 25.11.10")
+    return ZetaKernel(product, lambda s: p - s, a, zero, infinity, -p - 1, "DLMF 25.11.10")
 
 
 def _rising(p: Expr, n: int) -> Expr:
     return Mul(*(p + j for j in range(n))) / Mul(*range(1, n + 1))
 
 
-def _kernel(node: Expr, x: Symbol, sign: Sign) -> tuple[_Kernel, Expr, Expr] | None:
+def zeta_kernel(node: Expr, x: Symbol, sign: Sign) -> tuple[ZetaKernel, Expr, Expr] | None:
     """The kernel, and ``scale`` and ``ratio`` of its argument ``a + scale*x**ratio``."""
     kind = type(node)
     factor, inner = S.One, node
@@ -153,18 +153,18 @@ def _may_converge(p: Expr, x: Symbol, sign: Sign) -> bool:
     return not p.has_free(x) and (sign(p - 1) == 1 or (not p.is_number and sign(p - 1) is None))
 
 
-def _moved(kernel: _Kernel, constant: Expr) -> _Kernel:
+def _moved(kernel: ZetaKernel, constant: Expr) -> ZetaKernel:
     """The kernel plus a constant."""
     zero = (kernel.at_zero[0] + constant, *kernel.at_zero[1:])
     infinity = (kernel.at_infinity[0], ((S.Zero, 0), constant), *kernel.at_infinity[1:])
-    return _Kernel(
+    return ZetaKernel(
         kernel.product, kernel.argument, kernel.offset, zero, infinity, kernel.beyond, kernel.source
     )
 
 
-def _times(kernel: _Kernel, factor: Expr) -> _Kernel:
+def _times(kernel: ZetaKernel, factor: Expr) -> ZetaKernel:
     product = kernel.product
-    return _Kernel(
+    return ZetaKernel(
         GammaProduct(constant_form(factor * product.constant), product.scale, product.factors),
         kernel.argument,
         kernel.offset,
@@ -246,7 +246,7 @@ def zeta_transform(f: Expr, x: Symbol, facts: HasSign | None = None) -> ZetaTran
     if split is None:
         return None
     front, c, node, rest = split
-    read = _kernel(node, x, sign)
+    read = zeta_kernel(node, x, sign)
     extra = _plain(rest, x)
     if read is None or extra is None:
         return None
@@ -314,7 +314,7 @@ def _special_term(f: Expr, x: Symbol) -> tuple[Expr, Expr, Expr, list[Expr]] | N
 
 
 def _strip(
-    kernel: _Kernel, scale: Expr, ratio: Expr, extra: dict[Term, Expr], sign: Sign
+    kernel: ZetaKernel, scale: Expr, ratio: Expr, extra: dict[Term, Expr], sign: Sign
 ) -> tuple[Expr, Expr] | None:
     """Minus the first exponents at 0 and at oo that survive, in this order, if they leave room."""
     zero = dict(extra)

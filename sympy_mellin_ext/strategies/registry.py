@@ -38,7 +38,7 @@ def _load() -> tuple[Strategy, ...]:
     global _strategies
     with _lock:
         if _strategies is None:
-            from . import abel_plana, exponential_series, master_theorem, mellin_barnes, radical, ranges, taylor
+            from . import abel_plana, exponential_series, master_theorem, mellin_barnes, radical, ranges, taylor, zeta_sums
 
             found: list[Strategy] = [
                 *master_theorem.STRATEGIES,
@@ -48,6 +48,7 @@ def _load() -> tuple[Strategy, ...]:
                 *taylor.STRATEGIES,
                 *mellin_barnes.STRATEGIES,
                 *taylor.LATER,
+                *zeta_sums.STRATEGIES,
                 *radical.STRATEGIES,
                 *ranges.CHANGES,
             ]
