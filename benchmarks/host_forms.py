@@ -25,7 +25,8 @@ class _Relax(ast.NodeTransformer):
                 ast.Call(ast.Name("_same_value", ast.Load()), [left, right], [])
                 for left, right in zip(sides, sides[1:], strict=False)
             ]
-            return ast.copy_location(ast.Assert(ast.BoolOp(ast.And(), calls), node.msg), node)
+            same: ast.expr = calls[0] if len(calls) == 1 else ast.BoolOp(ast.And(), calls)
+            return ast.copy_location(ast.Assert(same, node.msg), node)
         return node
 
 

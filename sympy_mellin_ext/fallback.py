@@ -11,7 +11,7 @@ from contextlib import contextmanager
 from contextvars import ContextVar
 from typing import Any
 
-from sympy import Dummy, Integral
+from sympy import Add, Dummy, Expr, Integral, Mul, Pow, Symbol, cos, cosh, degree, exp, sin, sinh
 
 Question = tuple[Any, tuple[Any, ...]]
 
@@ -45,3 +45,26 @@ def is_refused(integral: Integral) -> bool:
     }
     return bool(names) and integral.xreplace(names).args == (f, *limits)
 
+
+def has_plain_antiderivative(f: Expr, x: Symbol) -> bool:
+    """Whether SymPy finds an antiderivative at sight: powers, exponentials and waves of a linear argument.
+
+    It holds for ends of any sign and order then, as a change of variable to (0, 1) may not.
+    """
+    if type(f) is Add:
+        return all(has_plain_antiderivative(term, x) for term in f.args)
+    roots = 0
+    for factor in f.args if type(f) is Mul else (f,):
+        if not factor.has_free(x) or factor == x:
+            continue
+        if type(factor) is Pow and not factor.exp.has_free(x):
+            if not factor.base.is_polynomial(x):
+                return False
+            if not (factor.exp.is_Integer and factor.exp > 0):
+                roots += 1
+        elif type(factor) in (exp, sin, cos, sinh, cosh):
+            if not (factor.args[0].is_polynomial(x) and degree(factor.args[0], x) <= 1):
+                return False
+        elif not factor.is_polynomial(x):
+            return False
+    return roots <= 1

@@ -1,7 +1,28 @@
 """Sums of closed forms written shorter: logarithms joined, common factors taken out."""
 from __future__ import annotations
 
-from sympy import Add, Expr, I, Mul, Pow, S, cancel, count_ops, factor, factor_terms, log, preorder_traversal
+from sympy import (
+    Add,
+    Dummy,
+    Expr,
+    Function,
+    I,
+    Mul,
+    NumberSymbol,
+    Poly,
+    Pow,
+    S,
+    cancel,
+    count_ops,
+    factor,
+    factor_terms,
+    fraction,
+    log,
+    preorder_traversal,
+    sqrt,
+    together,
+)
+from sympy.core.numbers import ImaginaryUnit
 
 # Larger sums are left as they are: the gain would not pay for the search.
 _MOST_TERMS = 12
@@ -25,16 +46,25 @@ def shortest_sum(total: Expr) -> Expr:
         return total
     total = Add(*(_same_signs(t) for t in total.args))
     candidates = [total]
+    if total.is_number:
+        candidates.extend(_in_one_radical(total))
     joined = _join_logarithms(total)
     if joined is not total:
         candidates.append(joined)
     if total.is_Add:
         symbols = sorted(total.free_symbols, key=str)
         if symbols and len(total.args) <= _MOST_FRACTIONS and total.is_rational_function(*symbols):
-            candidates.append(_conjugates_joined(factor(cancel(total))))
+            candidates += [_conjugates_joined(factor(cancel(total))), total.expand()]
         else:
             candidates.append(factor_terms(joined, sign=True))
-    return min(candidates, key=count_ops)
+    return _evaluated(min(candidates, key=count_ops))
+
+
+def _evaluated(expr: Expr) -> Expr:
+    """As SymPy's constructors have it: a number in front of a sum would not survive pickling."""
+    if not expr.args or not (expr.is_Add or expr.is_Mul or expr.is_Pow):
+        return expr
+    return expr.func(*(_evaluated(a) for a in expr.args))
 
 
 def _opened(product: Expr) -> Expr:
@@ -43,7 +73,28 @@ def _opened(product: Expr) -> Expr:
     if len(sums) != 1 or len(sums[0].args) > _MOST_TERMS:
         return product
     front = Mul(*(f for f in product.args if f is not sums[0]))
-    return min(product, Add(*(front * t for t in sums[0].args)), key=count_ops)
+    inner = shortest_sum(sums[0])
+    if inner is not sums[0]:
+        product = front * inner
+    return _evaluated(min(product, Add(*(front * t for t in Add.make_args(inner))), key=count_ops))
+
+
+def _in_one_radical(number: Expr) -> list[Expr]:
+    """A number that is rational in one square root as ``p + q*sqrt(n)``, none where it is not."""
+    radicals = {a for a in number.atoms(Pow) if a.exp.is_Rational and a.exp.q == 2 and a.base.is_Integer}
+    bases = {a.base for a in radicals}
+    if len(bases) != 1 or (number.atoms(Function, NumberSymbol, ImaginaryUnit)):
+        return []
+    (n,) = bases
+    root = Dummy("r")
+    rational = number.xreplace({a: root * n ** (a.exp - S.Half) for a in radicals})
+    if not rational.is_rational_function(root):
+        return []
+    top, bottom = (Poly(part, root).rem(Poly(root**2 - n, root)) for part in fraction(together(rational)))
+    inverse = Poly(bottom.nth(0) - bottom.nth(1) * root, root)
+    norm = bottom.nth(0) ** 2 - n * bottom.nth(1) ** 2
+    reduced = (top * inverse).rem(Poly(root**2 - n, root))
+    return [(reduced.nth(0) + reduced.nth(1) * sqrt(n)) / norm] if norm != 0 else []
 
 
 def _conjugates_joined(product: Expr) -> Expr:

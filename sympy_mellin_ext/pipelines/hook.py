@@ -87,14 +87,12 @@ def _dispatcher(original: Callable[..., Any]) -> Callable[..., Any]:
             outcome = try_strategies(f, self.limits, (), hints, nested=True)
         finally:
             _busy.reset(token)
-        if outcome.closed is not None:
+        if outcome.settled:
             return outcome.answer
         if outcome.question is None:
             return original(self, **hints)
-        if outcome.divergent:
-            return outcome.unbounded()
         with refused(self.function, self.limits):
-            return original(self, **hints)
+            return outcome.judged(original(self, **hints))
 
     return doit
 

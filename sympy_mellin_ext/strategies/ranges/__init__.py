@@ -8,6 +8,7 @@ from sympy import DiracDelta, S, SingularityFunction, oo, sinc
 from sympy.logic.boolalg import And
 
 from ...closed_form import ClosedForm
+from ...gamma.sums import shortest_sum
 from ...problem import Problem
 from ...region import Region
 from . import circular, finite, whole
@@ -34,7 +35,10 @@ class Ranges:
         if (lower is oo or upper is -oo) or self._reversed(problem):
             answer = self._forward(problem.changed(problem.integrand, upper, lower))
             return None if answer is None else added(problem, [(S.NegativeOne, answer)])
-        return self._forward(problem)
+        answer = self._forward(problem)
+        if answer is None or problem.depth:
+            return answer
+        return replace(answer, value=shortest_sum(answer.value))
 
     @staticmethod
     def _reversed(problem: Problem) -> bool:
