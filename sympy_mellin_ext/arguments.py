@@ -1,14 +1,14 @@
 """Checks of the arguments of the public calls; every error names the argument and what is accepted."""
 from __future__ import annotations
 
-from collections.abc import Iterable
-from typing import Any
+from typing import Any, TypeAlias
 
 from sympy import Expr, Symbol, sympify
 from sympy.core.relational import Relational
 from sympy.logic.boolalg import Boolean, BooleanAtom
 
-Given = Boolean | Iterable[Boolean]
+# a relation or several; SymPy ships no annotations that could say more
+Given: TypeAlias = Any
 
 
 def relations(given: Given) -> tuple[Boolean, ...]:

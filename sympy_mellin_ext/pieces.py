@@ -144,7 +144,7 @@ class Piece:
         return ladders
 
     def _climb(self, ladder: Ladder) -> Iterator[Expr]:
-        for n in count() if ladder.count is None else range(ladder.count):
+        for n in count() if ladder.length is None else range(ladder.length):
             yield self._exponent(ladder.start - n * ladder.step)
 
     def _exponent(self, pole: Expr) -> Expr:

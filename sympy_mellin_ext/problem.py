@@ -2,6 +2,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass, replace
+from typing import Any
 
 from sympy import Expr, S, Symbol, oo
 
@@ -84,12 +85,12 @@ class Problem:
         """Whether the range is (0, oo)."""
         return self.lower is S.Zero and self.upper is S.Infinity
 
-    def refuse(self, reason: str, detail: str) -> None:
+    def refuse(self, reason: str, detail: str) -> Any:
         """Note why a strategy refuses; returns None so that it can be returned."""
         if self.diagnosis is not None:
             self.diagnosis.findings.append(Refusal(reason, detail))
 
-    def diverges(self, detail: str, infinity: Expr | None = None) -> None:
+    def diverges(self, detail: str, infinity: Expr | None = None) -> Any:
         """Note that the integral is shown to diverge, for every value of the parameters (to oo or -oo)."""
         if self.diagnosis is not None:
             self.diagnosis.proved.append(self.depth)

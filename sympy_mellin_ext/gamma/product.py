@@ -30,12 +30,12 @@ class Ladder(NamedTuple):
     """The poles of one numerator Gamma that the denominators leave: ``start, start - step, ...``.
 
     ``step`` is positive for poles to the left of the strip and negative for poles to the right.
-    ``count`` rungs are left where a denominator cancels all further ones; None if it never ends.
+    ``length`` rungs are left where a denominator cancels all further ones; None if it never ends.
     """
 
     start: Expr
     step: Expr
-    count: int | None = None
+    length: int | None = None
 
 
 @dataclass(frozen=True)

@@ -41,7 +41,8 @@ class Tilt:
         poles = sum(s and f.power > 0 for s, f in zip(singular, self.factors, strict=True))
         # a moving pole costs one power of eps, and one more for each delta
         reach = top + (poles + k if poles else 0)
-        ups, downs = [], []
+        ups: list[Expr] = []
+        downs: list[Expr] = []
         product: _Double = {(0, 0): S.One}
         for argument, pole, factor in zip(arguments, singular, self.factors, strict=True):
             series = gamma_series(argument, S.One, factor.power, max(reach, 0) + k + 2)

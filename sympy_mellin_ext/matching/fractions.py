@@ -92,12 +92,12 @@ def split(factors: list[tuple[Expr, int]], x: Symbol, facts: Facts) -> list[Draf
         return [d.times(Draft(power=front_power)) for d in drafts]
     y = Dummy("y")  # never leaves this module: polynomials are read back by their coefficients
     try:
-        denominators = _factored(bases, [n for _, n in factors], ratio, y)
+        factored = _factored(bases, [n for _, n in factors], ratio, y)
     except PolynomialError:
         return None
-    if denominators is None:
+    if factored is None:
         return None
-    constant, denominators = denominators
+    constant, denominators = factored
     drafts = []
     for numerator, den in _partial_fractions(denominators, y):
         part = _one_fraction(numerator, den, ratio, facts, y)
@@ -114,7 +114,8 @@ def _simple(
     """``1/prod (c_i + y)`` with different constants: ``sum 1/(prod_(j != i) (c_j - c_i)) / (c_i + y)``."""
     if any(n != 1 for n in powers) or not all(len(b) == 2 and ratio in (b[0][1], b[1][1]) for b in bases):
         return None
-    front, constants = S.One, []
+    front: Expr = S.One
+    constants: list[Expr] = []
     for base in bases:
         (c0, p0), (c1, _) = base
         if not p0.is_zero:

@@ -199,8 +199,8 @@ class Reader:
             # a pole on the half line: of use only where it cancels
             if not exponent.is_Integer:
                 return None
-            kernel = pole_kernel(-int(exponent), -c1 / c0, ratio)
-            return [Draft(coefficient=Pow(c0, exponent), power=p0 * exponent, kernels=(kernel,))]
+            pole = pole_kernel(-int(exponent), -c1 / c0, ratio)
+            return [Draft(coefficient=Pow(c0, exponent), power=p0 * exponent, kernels=(pole,))]
         kernel = self.kernel(
             "power", power_transform(-exponent), c1 / c0, ratio, "DLMF 5.12.3", arguments=(-exponent,)
         )
@@ -325,11 +325,11 @@ class Reader:
         c, ratio = single
         if type(expr) is hyper and len(expr.ap) <= len(expr.bq) and self.facts.sign(c) == 1:
             # grows at oo: of use only in a product with a decaying kernel
-            kernel = Kernel(
+            turned = Kernel(
                 f"turned {len(expr.ap)}F{len(expr.bq)}", product.with_scale(c), ratio, Wave(pi, S.Zero, False),
                 S.true, False, source, (*expr.ap, *expr.bq),
             )  # fmt: skip
-            return [Draft(kernels=(kernel,))]
+            return [Draft(kernels=(turned,))]
         kernel = self.kernel(type(expr).__name__, product, turn * c, ratio, source)
         return None if kernel is None else [Draft(kernels=(kernel,))]
 

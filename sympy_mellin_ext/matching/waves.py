@@ -184,6 +184,17 @@ def _mode_kernel(mode: _Mode, ratio: Expr, facts: Facts) -> list[tuple[Expr, tup
     return [(coefficient, (Kernel("exp", EXP.with_scale(modulus), ratio, wave, condition, True, _SOURCE),))]
 
 
+def _turned(scale: Expr) -> Expr:
+    """``c*cos(t) + I*c*sin(t)`` written ``c*exp(I*t)``."""
+    if type(scale) is Add and len(scale.args) == 2:
+        for one, other in (scale.args, scale.args[::-1]):
+            c, wave = one.as_independent(cos, as_Add=False)
+            d, second = other.as_independent(sin, as_Add=False)
+            if isinstance(wave, cos) and isinstance(second, sin) and wave.args == second.args and d in (I * c, -I * c):
+                return c * exp(d / c * wave.args[0])
+    return scale
+
+
 def _decaying(
     coefficient: Expr, decay: Expr, ratio: Expr, facts: Facts
 ) -> list[tuple[Expr, tuple[Kernel, ...]]] | None:
@@ -212,6 +223,7 @@ def _decaying(
             decay, wave, inside = turn * frequency, Wave(turn * pi / 2, S.Zero, False), False
         else:
             condition = real_part(decay) > 0
+            decay = _turned(decay)
     return [(coefficient, (Kernel("exp", EXP.with_scale(decay), ratio, wave, condition, inside, _SOURCE),))]
 
 

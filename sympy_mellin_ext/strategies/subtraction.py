@@ -34,7 +34,7 @@ def without_head(kernel: Kernel, count: int) -> tuple[Kernel, list[Term]] | None
     if len(ladders) != 1:
         return None
     start, step = ladders[0].start, ladders[0].step
-    if ladders[0].count is not None and count > ladders[0].count:
+    if ladders[0].length is not None and count > ladders[0].length:
         return None
     factors = list(kernel.product.factors)
     place = next(
