@@ -108,17 +108,15 @@ class ClosedForm:
         return Integral(self.integrand, *self.limits)
 
     def verify(
-        self, digits: int = 15, points: Sequence[Mapping[Symbol | str, Any]] | None = None
+        self, digits: int = 15, points: Sequence[Mapping[Symbol | str, Any]] | None = None, seconds: float = 10
     ) -> Verification:
-        """Compare with numerical quadrature at points inside the region; see :func:`verify`."""
-        from .verify import verify
+        """Compare with numerical quadrature at points inside the region and outside; see :func:`verify`."""
+        from .verify import Verification, verify
 
-        if len(self.limits) != 1:
-            raise ValueError("verify takes an integral over one variable, not " + str(self.limits))
-        return verify(
-            self.integrand, self.limits[0], self._general(), condition=self.condition, digits=digits,
-            points=points, given=self.given,
-        )  # fmt: skip
+        if self.strategy.startswith("principal value"):
+            return Verification((), (), (), (), None, "a principal value: quadrature finds a divergent integral")
+        limits = self.limits[0] if len(self.limits) == 1 else self.limits
+        return verify(self.integrand, limits, self._general(), self.condition, digits, points, self.given, seconds)
 
     def at(self, **values: Any) -> Expr:
         """The exact value at special parameters, also where ``value`` reads 0*oo or oo - oo.

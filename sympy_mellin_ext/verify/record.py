@@ -3,16 +3,24 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
+from fractions import Fraction
 from typing import Any
 
 from mpmath import mp
-from sympy import Expr, Symbol, sympify
+from sympy import Expr, Symbol, Tuple, sympify
 from sympy.logic.boolalg import Boolean
 
+from .edges import edges
 from .functions import Number
+from .nested import quad_nested
 from .numeric import Undefined, Unevaluated, evaluate
 from .quadrature import checked_limits, quad
-from .sampling import as_point, sample, show
+from .sampling import Point, as_point, sample, show
+
+Ranges = tuple[tuple[Symbol, Expr, Expr], ...]
+_OUTSIDE_DIGITS = 8
+# how close to an edge, inside and outside; nested quadrature needs more room
+_MARGINS = ((Fraction(1, 12), Fraction(1, 8)), (Fraction(1, 3), Fraction(1, 3)))
 
 
 @dataclass(frozen=True)
@@ -31,6 +39,9 @@ class Verification:
         True if all points agree, False if one disagrees, None if at least one could not be checked.
     note : str
         What was wrong, or could not be checked, and where.
+    outside : tuple of (dict, str)
+        Points just outside the region, and what the integral does there: ``diverges``, ``converges to ...``, or
+        ``could not be checked: ...``.
     """
 
     points: tuple[dict[Symbol, Any], ...]
@@ -39,6 +50,15 @@ class Verification:
     digits: tuple[float, ...]
     ok: bool | None
     note: str = ""
+    outside: tuple[tuple[dict[Symbol, Any], str], ...] = ()
+
+    @property
+    def sharp(self) -> bool | None:
+        """Whether the integral diverges just outside the region; None where that is not known."""
+        verdicts = [verdict for _, verdict in self.outside]
+        if any(verdict.startswith("converges") for verdict in verdicts):
+            return False
+        return True if verdicts and all(verdict == "diverges" for verdict in verdicts) else None
 
     def __str__(self) -> str:
         verdict = {True: "agrees", False: "DISAGREES", None: "could not be checked"}[self.ok]
@@ -47,6 +67,7 @@ class Verification:
                                                 strict=True):
             lines.append(f"  {_where(point)}: closed form {show(closed)}, quadrature {show(value)}, "
                          f"{digits:.1f} digits")
+        lines += [f"  outside, {_where(point)}: {verdict}" for point, verdict in self.outside]
         if self.note:
             lines.append(self.note)
         return "\n".join(lines)
@@ -62,7 +83,7 @@ def verify(f: Any, limits: Any, value: Any, condition: Any = True, digits: int =
     f : Expr
         The integrand.
     limits : tuple
-        ``(x, a, b)``.
+        ``(x, a, b)``, or a sequence of them, innermost first: several variables are done to six digits.
     value : Expr
         The closed form.
     condition : Boolean
@@ -71,7 +92,8 @@ def verify(f: Any, limits: Any, value: Any, condition: Any = True, digits: int =
         Digits asked of the quadrature.
     points : list of mappings, optional
         Parameter values by symbol or name; without them, points inside the region are made from the
-        assumptions on the symbols, always the same ones.
+        assumptions on the symbols, always the same ones; some lie close to the edges, and just outside the
+        region the integral is looked at too.
     given : relation or list of relations
         Further restrictions on the points.
     seconds : float
@@ -97,7 +119,7 @@ def verify(f: Any, limits: Any, value: Any, condition: Any = True, digits: int =
     >>> verify(x**(s - 1)*exp(-x), (x, 0, oo), gamma(s + 1), re(s) > 0).ok
     False
     """
-    expr, x, low, high = checked_limits(f, limits)
+    expr, ranges = _checked_ranges(f, limits)
     closed_form = value if isinstance(value, str) else sympify(value)
     if not isinstance(closed_form, Expr):
         raise TypeError(f"value: an expression is accepted, not {type(value).__name__}")
@@ -106,16 +128,22 @@ def verify(f: Any, limits: Any, value: Any, condition: Any = True, digits: int =
         raise TypeError(f"condition: a Boolean is accepted, not {type(condition).__name__}")
     if not isinstance(digits, int) or isinstance(digits, bool) or not 1 <= digits <= 200:
         raise ValueError(f"digits: an integer from 1 to 200 is accepted, not {digits!r}")
-    symbols = (expr.free_symbols | low.free_symbols | high.free_symbols | closed_form.free_symbols) - {x}
+    symbols = expr.free_symbols | closed_form.free_symbols
+    symbols = symbols.union(*(end.free_symbols for limit in ranges for end in limit[1:]))
+    symbols = symbols - {limit[0] for limit in ranges}
+    outside: list[Point] = []
     if points is None:
-        inside = sample(symbols | getattr(region, "free_symbols", set()), region, given)
+        names = symbols | getattr(region, "free_symbols", set())
+        inside = sample(names, region, given, count=3)
+        near, outside = edges(names, region, given, inside, margins=_MARGINS[len(ranges) > 1])
+        inside += near
     elif isinstance(points, Mapping) or not all(isinstance(p, Mapping) for p in points):
         raise TypeError("points: a list of mappings from symbol or name to number is accepted")
     else:
         inside = [as_point(p, symbols) for p in points]
     if not inside:
         return Verification((), (), (), (), None, "no point inside the region was found")
-    rows = [_compared(expr, (x, low, high), closed_form, p, digits, seconds) for p in inside]
+    rows = [_compared(expr, ranges, closed_form, p, digits, seconds) for p in inside]
     verdicts = [row[3] for row in rows]
     notes = [f"at {_where(p)}: {row[4]}" for p, row in zip(inside, rows, strict=True) if row[4]]
     return Verification(
@@ -125,7 +153,32 @@ def verify(f: Any, limits: Any, value: Any, condition: Any = True, digits: int =
         digits=tuple(row[2] for row in rows),
         ok=False if False in verdicts else None if None in verdicts else True,
         note="; ".join(notes),
+        outside=tuple((p, _beyond(expr, ranges, p, digits, seconds)) for p in outside),
     )
+
+
+def _checked_ranges(f: Any, limits: Any) -> tuple[Expr, Ranges]:
+    """The integrand, and its ranges, innermost first."""
+    if isinstance(limits, (tuple, list)) and limits and all(isinstance(v, (tuple, list, Tuple)) for v in limits):
+        several = [checked_limits(f, limit) for limit in limits]
+        return several[0][0], tuple(limit[1:] for limit in several)
+    expr, x, low, high = checked_limits(f, limits)
+    return expr, ((x, low, high),)
+
+
+def _number(expr: Expr, ranges: Ranges, point: Point, digits: int, seconds: float,
+            ) -> tuple[Number, Number, bool, str]:
+    if len(ranges) == 1:
+        return quad(expr, ranges[0], point, digits, seconds)
+    return quad_nested(expr, ranges, point, digits, seconds)
+
+
+def _beyond(expr: Expr, ranges: Ranges, point: Point, digits: int, seconds: float) -> str:
+    """What the integral does at a point outside the region."""
+    value, _, reliable, note = _number(expr, ranges, point, min(digits, _OUTSIDE_DIGITS), seconds / 2)
+    if not reliable:
+        return f"could not be checked: quadrature is not reliable: {note}"
+    return f"converges to {mp.nstr(value, 8)}" if mp.isfinite(value) else "diverges"
 
 
 def _where(point: Mapping[Symbol, Any]) -> str:
@@ -133,10 +186,10 @@ def _where(point: Mapping[Symbol, Any]) -> str:
     return ", ".join(f"{k} = {show(v)}" for k, v in items) or "no parameters"
 
 
-def _compared(expr: Expr, limits: tuple[Symbol, Expr, Expr], closed_form: Expr, point: dict[Symbol, Any],
+def _compared(expr: Expr, ranges: Ranges, closed_form: Expr, point: dict[Symbol, Any],
               digits: int, seconds: float) -> tuple[Number, Number, float, bool | None, str]:
     """(closed, quadrature, digits, verdict, note) at one point."""
-    integral, error, reliable, note = quad(expr, limits, point, digits, seconds)
+    integral, error, reliable, note = _number(expr, ranges, point, digits, seconds)
     try:
         closed = evaluate(closed_form, point, digits)
     except (Undefined, Unevaluated) as cause:

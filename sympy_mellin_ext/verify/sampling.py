@@ -3,7 +3,6 @@ from __future__ import annotations
 
 import random
 from collections.abc import Callable, Iterable, Mapping, Sequence
-from fractions import Fraction
 from typing import Any
 
 from mpmath import mp
@@ -36,7 +35,7 @@ def draw(symbol: Symbol, source: random.Random, turned: bool) -> Expr:
     return value
 
 
-def _test(condition: Boolean, symbols: Sequence[Symbol]) -> Callable[[Point], bool]:
+def inside_test(condition: Boolean, symbols: Sequence[Symbol]) -> Callable[[Point], bool]:
     """The condition as a fast numerical test; what cannot be decided is not inside."""
     fast: Callable[..., Number] | None = None
     if not condition.is_Atom:
@@ -59,8 +58,8 @@ def _test(condition: Boolean, symbols: Sequence[Symbol]) -> Callable[[Point], bo
 def sample(symbols: Iterable[Symbol], condition: Any = True, given: Any = (), count: int = 4) -> list[Point]:
     """At most `count` different points where `condition` and `given` hold.
 
-    One in three has an imaginary part in a symbol that may be complex, the last one is close to an edge of
-    the region. Fewer points, or none, come back where the region is too thin to be hit.
+    One in three has an imaginary part in a symbol that may be complex. Fewer points, or none, come back where
+    the region is too thin to be hit.
     """
     names = sorted(symbols, key=str)
     relations = given if isinstance(given, (tuple, list)) else (given,)
@@ -69,10 +68,9 @@ def sample(symbols: Iterable[Symbol], condition: Any = True, given: Any = (), co
         return []
     if not names:
         return [{}]
-    inside = _test(region, names)
+    inside = inside_test(region, names)
     source = random.Random("parameters " + " ".join(str(n) for n in names))
     accepted: list[Point] = []
-    rejected: Point | None = None
     for number in range(_TRIES):
         turned = len(accepted) % 3 == 2 and number % 2 == 0
         point = {name: draw(name, source, turned) for name in names}
@@ -81,33 +79,7 @@ def sample(symbols: Iterable[Symbol], condition: Any = True, given: Any = (), co
                 accepted.append(point)
             if len(accepted) == count:
                 break
-        elif all(sympify(v).is_real for v in point.values()):
-            rejected = point
-    if accepted and rejected is not None:
-        edge = _near_edge(accepted[0], rejected, inside)
-        if edge is not None and edge not in accepted:
-            accepted = [*accepted[:count - 1], edge]
     return accepted
-
-
-def _near_edge(good: Mapping[Symbol, Any], bad: Mapping[Symbol, Any], inside: Callable[[Point], bool],
-               ) -> Point | None:
-    """A point on the way from an inside point to an outside one, three quarters of the way to the edge."""
-    def between(part: Fraction) -> Point:
-        share = Rational(part.numerator, part.denominator)
-        return {k: v if k.is_integer else v + share * (bad[k] - v) for k, v in good.items()}
-
-    if inside(between(Fraction(1))):
-        return None  # only an integer parameter separates the two
-    low, high = Fraction(0), Fraction(1)
-    for _ in range(10):
-        middle = (low + high) / 2
-        if inside(between(middle)):
-            low = middle
-        else:
-            high = middle
-    point = between((low * Fraction(3, 4)).limit_denominator(64))
-    return point if inside(point) else None
 
 
 def as_point(point: Mapping[Any, Any], symbols: Iterable[Symbol]) -> Point:
