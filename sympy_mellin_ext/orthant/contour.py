@@ -74,14 +74,14 @@ def _told(
     solved = "; ".join(f"s{j + 1} = {form.expr(symbols)}".replace("_s", "s") for j, form in sorted(solution.items()))
     index = len(free)
     steps = [
-        Step(f"exponent matrix of the kernels {names}, index {index}", result=matrix),
+        Step(f"exponent matrix of the kernels {names}, index {index}", "DLMF 1.14.39 in each variable", matrix),
         Step(f"solution {solved}, abs(det) = {determinant}", "linear equations of the Mellin variables"),
     ]
     how = "strips of the kernels at the solution"
     if free:
         how = f"free variables eliminated from {len(system.bounds)} strips"
     told = ", ".join(f"{p} > 0" for p in positive)
-    steps.append(Step(f"{how}: {told}", "Fourier-Motzkin elimination" if free else ""))
+    steps.append(Step(f"{how}: {told or 'nothing further'}", "Fourier-Motzkin elimination" if free else "Fubini"))
     return steps
 
 
@@ -249,7 +249,7 @@ def _symbolic(product: Product, facts: Facts) -> Outcome | None:
     if value.has(*BAD):
         return None
     told = f"exponent matrix of the kernels {', '.join(system.names)}, index 0"
-    step = Step(told, result=ImmutableDenseMatrix(matrix))
+    step = Step(told, "DLMF 1.14.39 in each variable", ImmutableDenseMatrix(matrix))
     return Outcome(value, tuple(positive), tuple(system.booleans), (step,), (*system.sources, _SOURCE))
 
 

@@ -164,7 +164,7 @@ def _along(prod: Product, variables: Sequence[Symbol], facts: Facts, w: Directio
             moving.append((special, parts))
     if not moving:
         return None
-    told = " ".join(f"{x}**({rational(c / w[y])})" for x, c in zip(variables, w, strict=True) if c)
+    told = " ".join(f"{x.name}**({rational(c / w[y])})" for x, c in zip(variables, w, strict=True) if c)
     if len(moving) == 1:
         return _single(moving[0], rest, power, others, facts, told)
     return _liouville(moving, rest, power, others, facts, told)

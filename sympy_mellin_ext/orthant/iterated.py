@@ -22,6 +22,7 @@ from ..strategies.registry import attempt
 Limits = Sequence[tuple[Symbol, Expr, Expr]]
 _POSITIVE = (besselk, erfc, expint, uppergamma)
 _MOST_ORDERS = 6
+_LONGEST = 80  # a longer inner result is not worth another integration
 _SOURCE = "Tonelli's theorem"
 
 
@@ -83,7 +84,10 @@ def _in_order(f: Expr, ranges: Limits, facts: Facts) -> ClosedForm | None:
         answer = attempt(Problem(f, x, lower, upper, within, depth=1))
         if answer is None or (outer and (answer.special or answer.condition.has(*outer))):
             return None
-        steps = (*steps, Step(f"integrated over {x.name}, for all values of the other variables", _SOURCE, answer.value))
+        if outer and answer.value.count_ops() > _LONGEST:
+            return None
+        told = f"integrated over {x.name}, for all values of the other variables"
+        steps = (*steps, Step(told, _SOURCE, answer.value))
         steps, sources = (*steps, *answer.steps), (*sources, *answer.sources)
         condition, f = And(condition, answer.condition), answer.value
     region = Region(facts).holds(condition)
@@ -103,12 +107,12 @@ def nonnegative(expr: Expr, facts: Facts) -> bool:
         return bool(expr.args[0].is_real)
     if expr.is_Pow:
         whole = expr.exp.is_even and expr.base.is_real
-        return bool(whole) or bool(expr.exp.is_real) and nonnegative(expr.base, facts)
+        return bool(whole) or (bool(expr.exp.is_real) and nonnegative(expr.base, facts))
     if isinstance(expr, _POSITIVE):
         return all(a.is_real for a in expr.args[:-1]) and facts.sign(expr.args[-1]) == 1
     if expr.is_Add and all(nonnegative(a, facts) for a in expr.args):
         return True
-    return bool(expr.is_nonnegative) or bool(expr.is_extended_real) and facts.sign(expr) in (0, 1)
+    return bool(expr.is_nonnegative) or (bool(expr.is_extended_real) and facts.sign(expr) in (0, 1))
 
 
 __all__ = ["iterated", "nonnegative"]

@@ -20,6 +20,7 @@ from ..strategies.tidy import tidy
 from .elimination import LIOUVILLE
 from .iterated import iterated
 from .polynomial import read_monomial, read_polynomial
+from .reader import read_products
 from .strategy import NAME, integrate_orthant
 
 _CHENG_WU = "Cheng and Wu, Expanding Protons (1987)"
@@ -42,7 +43,12 @@ def solve_several(f: Expr, limits: Limits, facts: Facts) -> ClosedForm | None:
     if len(set(names)) != len(names) or not f.is_commutative:
         return None
     limits = [(x, S(a), S(b)) for x, a, b in limits]
-    return _positive_ranges(f, limits, facts) or (None if f.has(DiracDelta) else iterated(f, limits, facts))
+    answer = _positive_ranges(f, limits, facts)
+    if answer is not None or f.has(DiracDelta):
+        return answer
+    if all(a is S.Zero and b is oo for _, a, b in limits) and read_products(f, names, facts):
+        return None  # whatever one variable after another gives has been tried
+    return iterated(f, limits, facts)
 
 
 def _positive_ranges(f: Expr, limits: Limits, facts: Facts) -> ClosedForm | None:
