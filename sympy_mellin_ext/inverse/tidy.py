@@ -12,6 +12,7 @@ from sympy import (
     Integer,
     Mul,
     Pow,
+    atanh,
     cancel,
     erf,
     erfc,
@@ -19,15 +20,30 @@ from sympy import (
     factor_terms,
     fraction,
     gamma,
+    log,
     together,
 )
+from sympy.core.sorting import default_sort_key
 
 from ..gamma.shortest import collect_powers, shortest_quotient
 from .signature import is_nonpositive_int, power, spread
 
 
+def _inverse_tangents(expr: Any) -> Any:
+    """``atanh(w)`` beside ``log(1 - w**2)``: both in ``log(1 + w)`` and ``log(1 - w)``, DLMF 4.37.24."""
+    arguments = [a.args[0] for a in sorted(expr.atoms(atanh), key=default_sort_key)]
+    partners = {log(1 - w**2): w for w in arguments}
+    found = {node: w for node, w in partners.items() if expr.has(node)}
+    if not found:
+        return expr
+    split: dict[Any, Any] = {node: log(1 + w) + log(1 - w) for node, w in found.items()}
+    split |= {atanh(w): (log(1 + w) - log(1 - w)) / 2 for w in found.values()}
+    return expr.xreplace(split)
+
+
 def tidy(expr: Any) -> Any:
     """The form in which F(z) is returned."""
+    expr = _inverse_tangents(expr)
     terms = Add.make_args(spread(expr))
     if len(terms) == 1:
         coefficient, rest = _parted(_product(terms[0]))

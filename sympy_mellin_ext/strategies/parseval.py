@@ -17,13 +17,17 @@ from sympy import (
     S,
     Subs,
     besselk,
+    count_ops,
     exp,
+    expand_log,
     expint,
     factorial,
     hyper,
+    log,
     meijerg,
     pi,
     sqrt,
+    together,
 )
 
 from ..behaviour import polar_scale
@@ -182,6 +186,8 @@ def _pair(term: Term, facts: Facts, region: Region) -> Expr | None:
     scales = [_certain(k, facts) or Dummy("eta", positive=True) for k in (first, second)]
     z = scales[0] * positive_power(scales[1], -rho)
     value = _entire_series(rows, first.wave, z) if _grows(first) else inverse_mellin(rows, z, facts)
+    if value is None and z is S.One and first.product.lam > 0 and second.product.lam > 0:
+        value = _through_neighbours(rows, facts)
     if value is None:
         return None
     size = second.ratio if second.ratio.is_positive else -second.ratio
@@ -193,8 +199,45 @@ def _pair(term: Term, facts: Facts, region: Region) -> Expr | None:
     return _closed(value, region) if isinstance(value, Piecewise) else value
 
 
+def _through_neighbours(rows: tuple[Factor, ...], facts: Facts) -> Expr | None:
+    """The value at equal scales from the formula for different ones.
+
+    Neither kernel oscillates, so that the integral is continuous in the ratio of the scales.
+    """
+    z = Dummy("z", positive=True)
+    value = inverse_mellin(rows, z, facts)
+    if value is None:
+        return None
+    for branch in [e for e, _ in value.args] if isinstance(value, Piecewise) else [value]:
+        met = branch.subs(z, S.One)
+        if not met.has(*_BAD) and not met.has(z):
+            return met
+    return None
+
+
+def _one_formula(value: Piecewise) -> Expr | None:
+    """The branch that holds on both sides, where the two are one function in different words.
+
+    Logarithms are split formally; where each branch holds, their arguments are positive.
+    """
+    first, second = (branch.expr for branch in value.args)
+    difference = first - second
+    if not difference.has(log) or difference.has(Piecewise):
+        return None
+    split = difference.replace(
+        lambda node: isinstance(node, log), lambda node: expand_log(log(together(node.args[0])), force=True)
+    )
+    if split.expand() is not S.Zero:
+        return None
+    everywhere = [e for e in (first, second) if all(node.args[0].is_positive for node in e.atoms(log))]
+    return min(everywhere, key=count_ops) if everywhere else None
+
+
 def _closed(value: Piecewise, region: Region) -> Expr:
     """Two branches ``l < r`` and ``l > r``, the second one closed where the integral is continuous at l = r."""
+    one = _one_formula(value) if len(value.args) == 2 else None
+    if one is not None:
+        return one
     if len(value.args) != 2:
         return value
     (first, where), (second, there) = value.args
