@@ -14,6 +14,7 @@ EXPECTED = [
     "Taylor coefficients",
     "sums with zeta coefficients",
     "function of a binomial",
+    "even function of exp(x)",
     "change of variable",
 ]
 

@@ -38,7 +38,17 @@ def _load() -> tuple[Strategy, ...]:
     global _strategies
     with _lock:
         if _strategies is None:
-            from . import abel_plana, exponential_series, master_theorem, mellin_barnes, radical, ranges, taylor, zeta_sums
+            from . import (
+                abel_plana,
+                exponential_series,
+                hyperbolic,
+                master_theorem,
+                mellin_barnes,
+                radical,
+                ranges,
+                taylor,
+                zeta_sums,
+            )
 
             found: list[Strategy] = [
                 *master_theorem.STRATEGIES,
@@ -50,6 +60,7 @@ def _load() -> tuple[Strategy, ...]:
                 *taylor.LATER,
                 *zeta_sums.STRATEGIES,
                 *radical.STRATEGIES,
+                *hyperbolic.STRATEGIES,
                 *ranges.CHANGES,
             ]
             for name, strategy in plug_ins(STRATEGY_GROUP):
