@@ -4,7 +4,7 @@ Source: DLMF 10.32.9 is the model (Bessel's K).
 """
 from __future__ import annotations
 
-from sympy import Expr, Symbol, cosh, exp, sinh, tanh
+from sympy import Expr, S, Symbol, cosh, exp, sinh, tanh
 
 from ..closed_form import ClosedForm, Step
 from ..problem import Problem
