@@ -12,6 +12,9 @@ from .functions import Number
 from .numeric import NUMERIC_ERRORS, as_number, compiled
 from .rules import OutOfTime
 
+# uneven, and enough of them to come close to a maximum of an oscillation
+_NEARBY = ("1", "1.0473", "1.0931", "1.1417", "1.1979", "1.2611", "1.3089", "1.3733", "1.4277")
+
 
 class Integrand:
     """f(x) with the parameters fixed.
@@ -85,7 +88,7 @@ class Integrand:
     def envelope(self, x: Number) -> Number:
         """About the largest abs(x*f(x)) close to x; 0 where f cannot be evaluated."""
         largest = mp.zero
-        for factor in (1, "1.093", "1.261", "1.427"):
+        for factor in _NEARBY:
             y = x * mp.mpf(factor)
             try:
                 largest = max(largest, abs(y * self.near(mp.zero, 1, y, mp.one)))
