@@ -8,33 +8,11 @@ from typing import TYPE_CHECKING, Any
 from sympy import And, Eq, Expr, Integral, Piecewise, S, Symbol, latex
 from sympy.logic.boolalg import Boolean
 
-from .gamma import GammaProduct
+from .steps import Step
 
 if TYPE_CHECKING:
     from .expansions import Asymptotics, ParameterSeries
     from .verify import Verification
-
-
-@dataclass(frozen=True)
-class Step:
-    """One step of the derivation: what was done, by which theorem, to what result.
-
-    A transform is kept as the Gamma product that it is, and written out only when somebody reads it.
-    """
-
-    action: str
-    theorem: str = ""
-    result: Expr | Boolean | GammaProduct | None = None
-
-    @property
-    def formula(self) -> Expr | Boolean | None:
-        """The result as a SymPy object, a transform as a function of ``s``."""
-        return self.result.as_expr(Symbol("s")) if isinstance(self.result, GammaProduct) else self.result
-
-    def __str__(self) -> str:
-        theorem = f" [{self.theorem}]" if self.theorem else ""
-        result = f": {self.formula}" if self.result is not None else ""
-        return f"{self.action}{theorem}{result}"
 
 
 @dataclass(frozen=True)
@@ -225,6 +203,30 @@ class ClosedForm:
 
         return source_of(self, backend, args, name)
 
+    def derivation(self, format: str = "text", standalone: bool = False) -> str:
+        """How the closed form was found, step by step, each with the theorem that it uses.
+
+        Parameters
+        ----------
+        format : 'text', 'markdown' or 'latex'
+        standalone : bool
+            With LaTeX: a whole document, not a part of one (which needs the package amsmath).
+
+        Examples
+        --------
+        >>> from sympy import exp, oo, symbols
+        >>> from sympy_mellin_ext import closed_form
+        >>> x, s = symbols('x s', positive=True)
+        >>> print(closed_form(x**(s - 1)*exp(-x), (x, 0, oo)).derivation())  # doctest: +ELLIPSIS
+        Integral: Integral(x**(s - 1)*exp(-x), (x, 0, oo))
+        <BLANKLINE>
+        1. Kernel exp(-x), its Mellin transform in s.  [DLMF 5.9.1, 5.9.6, 5.9.7]
+        ...
+        """
+        from .derivation import render
+
+        return render(self, format, standalone)
+
     def _general(self) -> Expr:
         branches = [(value, where) for where, value in self.special]
         return Piecewise(*branches, (self.value, True)) if branches else self.value
@@ -244,3 +246,8 @@ class ClosedForm:
     def _repr_latex_(self) -> str:
         region = "" if self.condition is S.true else r",\quad " + latex(self.condition)
         return rf"$\displaystyle {latex(self.integral)} = {latex(self.value)}{region}$"
+
+    def _repr_html_(self) -> str:
+        from .report.fragments import notebook
+
+        return notebook(self)
