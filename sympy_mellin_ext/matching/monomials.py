@@ -31,7 +31,7 @@ def monomial(expr: Expr, x: Symbol) -> Monomial | None:
             return None
         c, p = part
         # (c*y)**e = c**e*y**e for y > 0, whatever c and e are
-        return Pow(c, exponent), p * exponent
+        return c if c is S.One else Pow(c, exponent), exponent if p is S.One else p * exponent
     if kind is Abs:
         part = monomial(expr.args[0], x)
         return None if part is None else (Abs(part[0]), part[1])

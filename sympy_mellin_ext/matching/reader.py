@@ -21,8 +21,10 @@ from sympy import (
     binomial,
     cos,
     cosh,
+    erfi,
     exp,
     hyper,
+    jn,
     log,
     meijerg,
     pi,
@@ -30,6 +32,7 @@ from sympy import (
     sin,
     sinh,
     sqrt,
+    yn,
 )
 from sympy.logic.boolalg import And, Boolean
 from sympy.ntheory.multinomial import multinomial_coefficients
@@ -42,7 +45,7 @@ from ..region import Facts, real_part
 from .fractions import pole_kernel, split
 from .logarithms import logarithm
 from .monomials import monomial, monomials
-from .special import airy, explicit_series, hypergeometric, meijer
+from .special import airy, explicit_series, hypergeometric, imaginary_error, meijer, spherical_bessel
 from .term import Kernel, Term, Wave
 from .waves import Draft, finish
 
@@ -120,7 +123,8 @@ class Reader:
             return self._exponential(exponent * log(base)) if not base.has_free(self.x) else None
         single = monomial(base, self.x)
         if single is not None:
-            return [Draft(coefficient=Pow(single[0], exponent), power=single[1] * exponent)]
+            coefficient = single[0] if single[0] is S.One else Pow(single[0], exponent)
+            return [Draft(coefficient=coefficient, power=single[1] * exponent)]
         kind = type(base)
         if kind is Mul:
             return self._product_power(base, exponent)
@@ -420,6 +424,9 @@ _RULES: dict[type, Callable[[Reader, Expr], Drafts | None]] = {
     Abs: _magnitude,
     airyai: airy,
     airybi: airy,
+    erfi: imaginary_error,
+    jn: spherical_bessel,
+    yn: spherical_bessel,
     hyper: hypergeometric,
     meijerg: meijer,
     Sum: explicit_series,

@@ -3,7 +3,23 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
-from sympy import Expr, Mul, Pow, Rational, S, Symbol, airyai, besseli, besselj, factor_terms, sqrt
+from sympy import (
+    Expr,
+    Mul,
+    Pow,
+    Rational,
+    S,
+    Symbol,
+    airyai,
+    besseli,
+    besselj,
+    bessely,
+    factor_terms,
+    hyper,
+    jn,
+    pi,
+    sqrt,
+)
 
 from ..kernels import rows
 from ..kernels.general import gauss_transform, hyper_transform, meijer_transform
@@ -27,6 +43,19 @@ def hypergeometric(reader: Reader, expr: Expr) -> Drafts | None:
 def meijer(reader: Reader, expr: Expr) -> Drafts | None:
     """Meijer's G at a positive argument is a Gamma product by definition, DLMF 16.17.1."""
     return reader.general(expr, expr.argument, lambda: meijer_transform(expr), "DLMF 16.17.1", 1)
+
+
+def imaginary_error(reader: Reader, expr: Expr) -> Drafts | None:
+    """``erfi(z) = 2*z/sqrt(pi)*1F1(1/2; 3/2; z**2)``, DLMF 7.11.4; of use beside a decaying exponential."""
+    z = expr.args[0]
+    return reader.read(2 * z / sqrt(pi) * hyper((S.Half,), (3 * S.Half,), z**2))
+
+
+def spherical_bessel(reader: Reader, expr: Expr) -> Drafts | None:
+    """``jn(n, z) = sqrt(pi/(2*z))*J_(n+1/2)(z)`` and its like, DLMF 10.47.3 and 10.47.4."""
+    n, z = expr.args
+    cylinder = besselj if type(expr) is jn else bessely
+    return reader.read(sqrt(pi / (2 * z)) * cylinder(n + S.Half, z))
 
 
 def explicit_series(reader: Reader, expr: Expr) -> Drafts | None:

@@ -7,7 +7,7 @@ from __future__ import annotations
 from dataclasses import dataclass, replace
 from typing import Any
 
-from sympy import Abs, Add, Expr, I, Ne, S, atan, cos, pi, sign, sin, sqrt
+from sympy import Abs, Add, Expr, I, Ne, S, atan, cos, exp, pi, sign, sin, sqrt
 from sympy.logic.boolalg import And, Boolean
 
 from ..kernels.elementary import COS, EXP, SIN
