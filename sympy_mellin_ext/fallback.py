@@ -47,7 +47,7 @@ def is_refused(integral: Integral) -> bool:
 
 
 def has_plain_antiderivative(f: Expr, x: Symbol) -> bool:
-    """Whether SymPy finds an antiderivative at sight: powers, exponentials and waves of a linear argument.
+    """Whether SymPy finds an antiderivative at sight: powers, exponentials, normal densities, waves.
 
     It holds for ends of any sign and order then, as a change of variable to (0, 1) may not.
     """
@@ -63,7 +63,8 @@ def has_plain_antiderivative(f: Expr, x: Symbol) -> bool:
             if not (factor.exp.is_Integer and factor.exp > 0):
                 roots += 1
         elif type(factor) in (exp, sin, cos, sinh, cosh):
-            if not (factor.args[0].is_polynomial(x) and degree(factor.args[0], x) <= 1):
+            highest = 2 if type(factor) is exp else 1
+            if not (factor.args[0].is_polynomial(x) and degree(factor.args[0], x) <= highest):
                 return False
         elif not factor.is_polynomial(x):
             return False

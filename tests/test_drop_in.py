@@ -111,6 +111,7 @@ ASKED = [
     ((exp(-a * x), (x, 0, oo)), {"manual": True, "conds": "none"}),
     ((exp(-a * x), (x, 0, oo)), {"heurisch": True}),
     ((exp(-a * x), (x, 0, oo)), {"risch": True}),
+    ((exp(-a * x), (x, 0, oo)), {"meijerg": False}),
     ((exp(-a * x), (x, 0, oo)), {"conds": "nothing"}),
     ((exp(-a * x), (x, 0, oo)), {"unheard_of": 1}),
     ((Function("f")(x), (x, 0, oo)), {"conds": "separate", "meijerg": False}),

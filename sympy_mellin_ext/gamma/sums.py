@@ -53,8 +53,10 @@ def shortest_sum(total: Expr) -> Expr:
         candidates.append(joined)
     if total.is_Add:
         symbols = sorted(total.free_symbols, key=str)
-        if symbols and len(total.args) <= _MOST_FRACTIONS and total.is_rational_function(*symbols):
-            candidates += [_conjugates_joined(factor(cancel(total))), total.expand()]
+        if symbols and total.is_rational_function(*symbols):
+            candidates.append(total.expand())
+            if len(total.args) <= _MOST_FRACTIONS:
+                candidates.append(_conjugates_joined(factor(cancel(total))))
         else:
             candidates.append(factor_terms(joined, sign=True))
     return _evaluated(min(candidates, key=count_ops))
