@@ -27,6 +27,7 @@ from sympy import (
     zeta,
 )
 
+from ..expanding import expanded
 from .shortest import positive_power
 
 
@@ -64,7 +65,7 @@ def exponential(exponents: Sequence[Expr], terms: int) -> tuple[Expr, ...]:
     result = [S.One]
     for n in range(1, terms):
         total = Add(*(k * exponents[k - 1] * result[n - k] for k in range(1, n + 1)))
-        result.append((total / n).expand())
+        result.append(expanded(total / n))
     return tuple(result)
 
 
@@ -73,7 +74,7 @@ def gamma_series(argument: Expr, rate: Expr, power: int, terms: int) -> Series:
     if argument.is_Integer and argument.is_nonpositive:
         m = -argument
         # log of delta*(-1)**m*m!*Gamma(-m + delta), delta = rate*eps
-        logs = [(-S.EulerGamma + harmonic(m)) * rate] + [
+        logs = [] if terms == 1 else [(-S.EulerGamma + harmonic(m)) * rate] + [
             (((-1) ** k * zeta(k) + harmonic(m, k)) / k) * rate**k for k in range(2, terms)
         ]
         head = (S.NegativeOne**m / (factorial(m) * rate)) ** power

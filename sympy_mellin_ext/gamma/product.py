@@ -11,6 +11,8 @@ from typing import NamedTuple
 
 from sympy import Add, Expr, Integer, Mul, Pow, Rational, S, Symbol, sympify
 
+from ..expanding import expanded
+
 from .laurent import Series, gamma_series, linear_series, multiply, power_series, sine_series
 from .shortest import positive_power, shortest_quotient
 
@@ -139,7 +141,7 @@ class GammaProduct:
         for a, A, e in self.factors:
             argument = a + A * s0
             if argument.is_Symbol or argument.is_number is False:
-                argument = argument.expand()
+                argument = expanded(argument)
             if argument.is_Integer and argument.is_nonpositive:
                 order += e
         return order
@@ -156,17 +158,47 @@ class GammaProduct:
                 # Gamma(a + A*s)/Gamma(a + d + A*s) is one over a polynomial of degree d
                 gap = f.shift - a if f.slope == A else S.Zero
                 if not gap.is_Integer:
-                    gap = gap.expand()
+                    gap = expanded(gap)
                 if gap.is_Integer and gap > 0:
                     count = length = int(gap)
                     below.remove(f)
                     break
             start, step = -a / A, 1 / A
             for n in range(length):
-                pole = (start - n * step).expand()
+                pole = expanded(start - n * step)
                 if self._survives(pole, side):
                     yield Ladder(pole, step, None if count is None else count - n)
                     break
+
+    def poles(self, side: int, count: int) -> list[tuple[Expr, int]]:
+        """The first ``count`` poles on a side with their orders, nearest to the strip first.
+
+        Parameters
+        ----------
+        side : int
+            +1 for the poles to the left, -1 for those to the right.  Ladders whose distance is not known
+            (symbolic shifts) follow one another.
+        count : int
+
+        Examples
+        --------
+        >>> from sympy import S
+        >>> from sympy_mellin_ext.gamma import GammaProduct
+        >>> GammaProduct.of(up=[(0, 1), (0, 1)]).poles(1, 2)
+        [(0, 2), (-1, 2)]
+        >>> GammaProduct.of(up=[(0, 1)], down=[(0, S.Half)]).poles(1, 2)  # every second one is cancelled
+        [(-1, 1), (-3, 1)]
+        """
+        found: dict[Expr, int] = {}
+        for ladder in self.ladders(side):
+            for n in range(_LONGEST_CANCELLATION if ladder.length is None else ladder.length):
+                pole = (ladder.start - n * ladder.step).expand()
+                order = self.order_at(pole)
+                if order > 0:
+                    found[pole] = order
+        numbers = sorted((p for p in found if p.is_number and p.is_real), key=lambda p: -side * p)
+        ordered = [*numbers, *(p for p in found if p not in numbers)]
+        return [(p, found[p]) for p in ordered[:count]]
 
     def _survives(self, pole: Expr, side: int) -> bool:
         """Whether Gammas of this side leave a pole here; a Gamma of the other side cannot cancel it."""
@@ -174,7 +206,7 @@ class GammaProduct:
         for a, A, e in self.factors:
             argument = a + A * pole
             if not argument.is_Number:
-                argument = argument.expand()
+                argument = expanded(argument)
             if argument.is_Integer and argument.is_nonpositive:
                 order += e
         return order > 0
@@ -195,7 +227,7 @@ class GammaProduct:
     def laurent(self, s0: Expr, terms: int, rate: Expr = S.One) -> Series:
         """Laurent series of ``G(s0 + rate*eps)`` in ``eps``: ``terms`` coefficients from the leading one."""
         series = power_series(self.scale, -s0, -rate, terms)
-        rest = [((a + A * s0).expand(), A * rate, e) for a, A, e in self.factors]
+        rest = [(expanded(a + A * s0), A * rate, e) for a, A, e in self.factors]
         while rest:
             a, r, e = rest.pop()
             partner = next((f for f in rest if f[2] == e and f[1] == -r and (f[0] + a - 1).is_Integer), None)

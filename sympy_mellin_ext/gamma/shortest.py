@@ -8,6 +8,8 @@ from collections.abc import Sequence
 
 from sympy import Add, Expr, Integer, Mul, Pow, S, cos, factorial, gamma, pi, sin, sqrt
 
+from ..expanding import expanded
+
 # Integer differences up to this size become a polynomial; beyond it two Gammas are shorter.
 _LONGEST_POLYNOMIAL = 4
 
@@ -20,7 +22,7 @@ def positive_power(base: Expr, exponent: Expr) -> Expr:
     if base.is_Pow and (
         (base.exp.is_Rational and -1 <= base.exp <= 1) or (base.base.is_positive and base.exp.is_real)
     ):
-        return Pow(base.base, (base.exp * exponent).expand())
+        return Pow(base.base, expanded(base.exp * exponent))
     if base.is_Mul and base.args[0].is_Rational and base.args[0].is_positive:
         number, rest = base.args[0], Mul(*base.args[1:])
         return Pow(number.p, exponent) * Pow(number.q, -exponent) * positive_power(rest, exponent)
@@ -115,7 +117,7 @@ def collect_powers(expr: Expr) -> Expr:
 
 
 def _gamma(argument: Expr) -> Expr:
-    if argument.is_integer and not argument.is_Integer and (argument - 1).is_nonnegative:
+    if not argument.is_Integer and _may_be_integer(argument) and argument.is_integer and (argument - 1).is_nonnegative:
         return factorial(argument - 1)
     if argument.is_Rational and argument.q > 2:
         # one Gamma a residue class: gamma(7/3) = (4/3)*(1/3)*gamma(1/3)
@@ -127,10 +129,20 @@ def _gamma(argument: Expr) -> Expr:
     return gamma(argument)
 
 
+def _may_be_integer(argument: Expr) -> bool:
+    """False where a term of a sum is no known integer: SymPy's own query would say so too, but slowly."""
+    for term in argument.args if argument.is_Add else (argument,):
+        if term.is_Mul and len(term.args) == 2 and term.args[0].is_Rational:
+            term = term.args[1]
+        if (term.is_Symbol or term.is_Rational) and not term.is_integer:
+            return False
+    return True
+
+
 def _difference(a: Expr, b: Expr) -> Expr:
     difference = a - b
     if difference.is_Add or difference.is_Mul:
-        difference = difference.expand()
+        difference = expanded(difference)
     return difference
 
 
@@ -165,8 +177,8 @@ def _duplicate(ups: list[Expr], downs: list[Expr], outside: list[Expr]) -> None:
                         x = a if d is S.Half else b
                         side.remove(a)
                         side.remove(b)
-                        side.append((2 * x).expand())
-                        outside.append((Pow(2, (1 - 2 * x).expand()) * sqrt(pi)) ** Integer(sign))
+                        side.append(expanded(2 * x))
+                        outside.append((Pow(2, expanded(1 - 2 * x)) * sqrt(pi)) ** Integer(sign))
                         again = True
                         break
                 if again:
@@ -175,14 +187,14 @@ def _duplicate(ups: list[Expr], downs: list[Expr], outside: list[Expr]) -> None:
         for a in list(above):
             if a.is_Number:
                 continue
-            half = (a / 2).expand()
+            half = expanded(a / 2)
             for b in list(below):
                 d = _difference(b, half)
                 if d is S.Zero or d is S.Half:
                     above.remove(a)
                     below.remove(b)
                     above.append(half + S.Half if d is S.Zero else half)
-                    outside.append((Pow(2, (a - 1).expand()) / sqrt(pi)) ** Integer(sign))
+                    outside.append((Pow(2, expanded(a - 1)) / sqrt(pi)) ** Integer(sign))
                     break
 
 
@@ -200,7 +212,7 @@ def _reflect(side: list[Expr], sign: int, outside: list[Expr], totals: Sequence[
                     continue
                 total = a + b
                 if not total.is_Number:
-                    total = total.expand()
+                    total = expanded(total)
                 if not total.is_Integer or (totals and total not in totals):
                     continue
                 if total != 1 and not (a.is_Number or total == 0 or (sign < 0 and 0 <= total <= 2)):
@@ -213,7 +225,7 @@ def _reflect(side: list[Expr], sign: int, outside: list[Expr], totals: Sequence[
                     factor = Mul(*(1 - x + j for j in range(n - 1)))
                 else:
                     factor = 1 / Mul(*(n - x + j for j in range(1 - n)))
-                outside.append((factor * pi / sin((pi * x).expand())) ** Integer(sign))
+                outside.append((factor * pi / sin(expanded(pi * x))) ** Integer(sign))
                 again = True
                 break
             if again:
@@ -224,14 +236,14 @@ def _cosine(ups: list[Expr], downs: list[Expr], outside: list[Expr]) -> None:
     """Gamma(x)/Gamma(1/2-x) = 2**(1-2x)*cos(pi x)*Gamma(2x)/sqrt(pi), regular where Gamma(x) is."""
     for a in list(ups):
         for b in downs:
-            if a.is_Number or b.is_Number or not a.has_free(*b.free_symbols):
+            if a.is_Number or b.is_Number:
                 continue
-            if (a + b).expand() is S.Half:
+            if expanded(a + b) is S.Half and a.has_free(*b.free_symbols):
                 ups.remove(a)
                 downs.remove(b)
-                double = (2 * a).expand()
+                double = expanded(2 * a)
                 ups.append(double)
-                outside.append(Pow(2, 1 - double) * cos((pi * a).expand()) / sqrt(pi))
+                outside.append(Pow(2, 1 - double) * cos(expanded(pi * a)) / sqrt(pi))
                 break
 
 
