@@ -108,7 +108,7 @@ def _closed(transform: SeriesTransform, phi: Expr, n: Symbol, s: Symbol, facts: 
         x = Dummy("x", positive=True)
     series = Sum(phi * (-x) ** n / factorial(n), (n, 0, oo))
     steps = (
-        Step("coefficient function", "", phi),
+        Step("coefficient function", "Hardy: f(x) = sum phi(n)*(-x)**n/n!", phi, transform.product),
         Step("phi is of exponential type less than pi on a half plane", "Hardy's condition; Carlson's theorem"),
         Step("master theorem", _SOURCE, value),
     )

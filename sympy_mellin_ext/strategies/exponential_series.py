@@ -24,6 +24,7 @@ from ..matching.waves import Draft, finish
 from ..pieces import Piece
 from ..problem import Problem
 from ..region import Region
+from ..steps import SeriesTransform
 from .finite_part import Edge
 from .master_theorem import closed_form_of_pieces, special_values
 from .registry import attempt
@@ -151,9 +152,8 @@ def _series(
     pieces = [*pieces, *(Piece.of_term(t) for t in terms)]
     if not pieces:
         return ClosedForm(S.Zero, strategy=name)
-    u = Symbol("s")
     steps = [
-        Step("series of exponentials, transform in s", _SOURCE, _transform(p, u))
+        Step("series of exponentials, transform in s", _SOURCE, SeriesTransform(p))
         for p in pieces
         if p.dirichlet
     ]
@@ -183,14 +183,6 @@ def _finished(answer: ClosedForm) -> ClosedForm:
         value=shortest(answer.value),
         special=tuple((where, shortest(v)) for where, v in answer.special),
     )
-
-
-def _transform(piece: Piece, u: Symbol) -> Expr:
-    assert piece.product is not None
-    value = piece.constant * piece.product.as_expr(u)
-    for factor in piece.dirichlet:
-        value = value * factor.at(u)
-    return value
 
 
 STRATEGIES = (ExponentialSeries(),)

@@ -21,6 +21,7 @@ from ..matching import Term, read_terms
 from ..pieces import Piece
 from ..problem import Problem
 from ..region import Region, real_part
+from ..steps import Total
 from .finite_part import Divergence, Edge, converge, total_value
 from .registry import attempt
 
@@ -78,7 +79,7 @@ def closed_form_of_terms(problem: Problem, terms: Sequence[Term], name: str) -> 
     """The closed form of a sum of terms with at most one kernel each."""
     sources = tuple(dict.fromkeys(k.source for t in terms for k in t.kernels if k.source))
     steps = tuple(
-        Step(f"kernel {k.name}, transform in s", k.source, k.product)
+        Step(f"kernel {k.name}, transform in s", k.source, k.product, k)
         for t in terms
         for k in t.kernels
     )
@@ -108,13 +109,16 @@ def closed_form_of_pieces(
     if condition is S.false:
         return problem.refuse("empty region", "the conditions contradict one another")
     several = len(pieces) > 1
+    reference = problem.reference or pieces[0].power
+    total = Total(tuple(pieces), at_zero, at_infinity, reference)
+    action, theorem = ("finite parts added", _SUM_SOURCE) if several else ("master theorem", _THEOREM_SOURCE)
     return ClosedForm(
         value,
         condition,
-        strip_of(at_zero, at_infinity, problem.reference or pieces[0].power),
+        strip_of(at_zero, at_infinity, reference),
         name,
-        (*steps, Step("finite parts added" if several else "master theorem", _SUM_SOURCE if several else _THEOREM_SOURCE, value)),
-        (*sources, _SUM_SOURCE if several else _THEOREM_SOURCE),
+        (*steps, Step(action, theorem, value, total)),
+        (*sources, theorem),
         special_values(pieces, at_zero, at_infinity, region),
     )
 
@@ -123,7 +127,8 @@ def strip_of(at_zero: Edge, at_infinity: Edge, reference: Expr) -> tuple[Expr, E
     """Bounds of Re s for the transform of the integrand without ``x**reference``, ``reference = s - 1``."""
     lower = [real_part(reference - e) for e in at_zero.survivors]
     upper = [real_part(reference - e) for e in at_infinity.survivors]
-    return (Max(*lower) if lower else -oo), (Min(*upper) if upper else oo)
+    below = lower[0] if len(lower) == 1 else Max(*lower) if lower else -oo
+    return below, upper[0] if len(upper) == 1 else Min(*upper) if upper else oo
 
 
 def special_values(

@@ -14,7 +14,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 
-from sympy import Add, Eq, Expr, Gt, Lt, Max, Min, Ne, Piecewise, S, Symbol, oo
+from sympy import Add, Eq, Expr, Gt, Lt, Max, Min, Ne, Piecewise, S, oo
 from sympy.core.sorting import default_sort_key
 from sympy.logic.boolalg import Boolean
 
@@ -24,6 +24,7 @@ from ..matching import Term, read_terms
 from ..pieces import Piece
 from ..problem import Problem
 from ..region import Facts, Region, real_part
+from ..steps import Contour
 from .finite_part import total_value
 from .lemmas import weber
 from .parseval import parseval
@@ -96,6 +97,10 @@ def closed_form_of_products(problem: Problem, terms: Sequence[Term], name: str) 
     if condition is S.false:
         return problem.refuse("empty region", "the conditions contradict one another")
     kernels = list(dict.fromkeys(k for t in terms for k in t.kernels))
+    if all(len(t.kernels) < 3 for t in parts):
+        last = Step("two transforms joined to one contour integral", _SOURCE, value, Contour(tuple(parts)))
+    else:
+        last = Step("Weber's second exponential integral", "DLMF 10.22.67", value)
     sources = tuple(dict.fromkeys(k.source for k in kernels if k.source))
     return ClosedForm(
         value,
@@ -103,8 +108,8 @@ def closed_form_of_products(problem: Problem, terms: Sequence[Term], name: str) 
         _strip(converged, problem.reference or terms[0].power),
         name,
         (
-            *(Step(f"kernel {k.name}, its transform", k.source, k.product.as_expr(Symbol("s"))) for k in kernels),
-            Step("two transforms joined to one contour integral", _SOURCE, value),
+            *(Step(f"kernel {k.name}, its transform", k.source, k.product, k) for k in kernels),
+            last,
         ),
         (*sources, _SOURCE),
         special,

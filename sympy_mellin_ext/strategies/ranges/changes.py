@@ -39,7 +39,7 @@ class HalfLineChanges:
         t, p = fresh(problem, real=True), fresh(problem, positive=True)
         inner = _logarithms_plain(f.xreplace({x: p}), p).xreplace({log(p): t}).xreplace({p: exp(t)}) * exp(t)
         answer = gaussian(problem, inner, t)
-        return None if answer is None else added(problem, [(S.One, answer)], Step("substitution x = exp(t)"))
+        return None if answer is None else added(problem, [(S.One, answer)], Step("substitution x = exp(t)", "change of variable"))
 
     @staticmethod
     def _nested(problem: Problem, f: Expr, x: Symbol) -> ClosedForm | None:
@@ -51,7 +51,7 @@ class HalfLineChanges:
             return None
         t, inner = changed
         answer = handed_on(problem, inner, t, S.One)
-        return None if answer is None else added(problem, [(S.One, answer)], Step("substitution t = exp(x)"))
+        return None if answer is None else added(problem, [(S.One, answer)], Step("substitution t = exp(x)", "change of variable"))
 
     @staticmethod
     def _root(problem: Problem, f: Expr, x: Symbol) -> ClosedForm | None:
@@ -89,7 +89,9 @@ class HalfLineChanges:
             None
             if answer is None
             else added(
-                problem, [(S.One, answer)], Step("substitution u = " + str(sqrt(base.xreplace({x: Symbol(x.name)}))))
+                problem,
+                [(S.One, answer)],
+                Step("substitution u = " + str(sqrt(base.xreplace({x: Symbol(x.name)}))), "change of variable"),
             )
         )
 
@@ -136,7 +138,7 @@ def split(problem: Problem) -> ClosedForm | None:
         answers.append((S.One, found))
     if not answers:
         return ClosedForm(S.Zero, strategy=HalfLineChanges.name)
-    return added(problem, answers, Step("range split at the break points"))
+    return added(problem, answers, Step("range split at the break points", "additivity of the integral in its range"))
 
 
 def constant(problem: Problem, c: Expr, lower: Expr, upper: Expr) -> ClosedForm | None:

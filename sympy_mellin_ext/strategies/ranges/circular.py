@@ -149,7 +149,7 @@ def _first_moment(problem: Problem, g: Expr, first: int, last: int, rate: Expr) 
         return None
     answer = _solved(problem, g, first, last, rate)
     centre = (problem.lower + problem.upper) / 2
-    return None if answer is None else added(problem, [(centre, answer)], Step("reflection about the centre"))
+    return None if answer is None else added(problem, [(centre, answer)], Step("reflection about the centre", "symmetry of the integrand"))
 
 
 def _whole(turns: Expr) -> int | None:
@@ -269,7 +269,7 @@ def _complementary(problem: Problem, g: Expr) -> ClosedForm | None:
     total = cancel(together(g + g.xreplace({_SIN: _COS, _COS: _SIN})))
     if total.has(_SIN, _COS):
         return None
-    return ClosedForm(total * pi / 4, S.true, None, "ranges", (Step("reflection x -> pi/2 - x"),))
+    return ClosedForm(total * pi / 4, S.true, None, "ranges", (Step("reflection x -> pi/2 - x", "symmetry of the integrand"),))
 
 
 def _by_halves(problem: Problem, g: Expr, first: int, last: int, rate: Expr) -> ClosedForm | None:

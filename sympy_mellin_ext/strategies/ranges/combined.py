@@ -74,8 +74,5 @@ def replaced(answer: ClosedForm, old: Symbol, new: Expr, extra: Boolean, facts: 
         condition=condition,
         strip=None if strip is None else (strip[0].xreplace({old: new}), strip[1].xreplace({old: new})),
         special=tuple((w.xreplace({old: new}), v.xreplace({old: new})) for w, v in answer.special),
-        steps=tuple(
-            replace(step, result=None) if (shown := step.formula) is not None and shown.has(old) else step
-            for step in answer.steps
-        ),
+        steps=tuple(step.with_replaced(old, new) for step in answer.steps),
     )

@@ -57,7 +57,7 @@ def on_line(problem: Problem) -> ClosedForm | None:
         t, inner = changed
         answer = handed_on(problem, inner, t)
         if answer is not None:
-            return added(problem, [(S.One, answer)], Step("substitution t = exp(x)"))
+            return added(problem, [(S.One, answer)], Step("substitution t = exp(x)", "change of variable"))
     centre = _centre(f, y)
     if centre is not None and centre is not S.Zero:
         f = _shifted(f, y, centre)
@@ -80,13 +80,13 @@ def _halves(problem: Problem, f: Expr, y: Symbol) -> ClosedForm | None:
     if answer is None:
         return None
     if flipped == f or left == right:
-        return added(problem, [(S(2), answer)], Step("even integrand: twice the half line"))
+        return added(problem, [(S(2), answer)], Step("even integrand: twice the half line", "symmetry of the integrand"))
     if flipped == -f or left == -right:
-        return added(problem, [(S.Zero, answer)], Step("odd integrand"))
+        return added(problem, [(S.Zero, answer)], Step("odd integrand", "symmetry of the integrand"))
     other = handed_on(problem, left, t)
     if other is None:
         return None
-    return added(problem, [(S.One, answer), (S.One, other)], Step("two half lines"))
+    return added(problem, [(S.One, answer), (S.One, other)], Step("two half lines", "additivity of the integral in its range"))
 
 
 # -- exp(quadratic) times polynomials and waves --------------------------------------------------------------
