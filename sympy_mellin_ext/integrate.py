@@ -169,22 +169,29 @@ def _try_several(f: Any, limits: tuple[Any, ...], facts: Facts, conds: str) -> O
     integrals = [_read(f, (limit,)) for limit in limits]
     if conds == "separate" or any(i is None for i in integrals):
         return Outcome()
+    diagnosis = Diagnosis()
     try:
-        answer = _solve_several(f, [i[1:] for i in integrals if i is not None], facts)
+        answer = _solve_several(f, [i[1:] for i in integrals if i is not None], facts, diagnosis)
     except RecursionError:
         answer = None
     except Exception as error:  # as with the strategies for one variable: the host goes on
         report("strategy 'orthant'", error)
         answer = None
     if answer is None:
-        return Outcome()
+        infinity = diagnosis.infinity
+        if infinity is None:
+            return Outcome()
+        question = (f, tuple(Tuple(*i[1:]) for i in integrals if i is not None))
+        return Outcome(None, infinity, True, question, True, infinity, diagnosis)
     return Outcome(answer, answer.value if conds == "none" else answer.as_piecewise(), True)
 
 
-def _solve_several(f: Expr, limits: list[tuple[Symbol, Expr, Expr]], facts: Facts) -> ClosedForm | None:
+def _solve_several(
+    f: Expr, limits: list[tuple[Symbol, Expr, Expr]], facts: Facts, diagnosis: Diagnosis | None
+) -> ClosedForm | None:
     from .orthant import solve_several
 
-    answer = solve_several(f, limits, facts)
+    answer = solve_several(f, limits, facts, diagnosis)
     return None if answer is None else replace(answer, integrand=f, limits=tuple(limits), given=facts.given)
 
 
@@ -258,7 +265,7 @@ def closed_form(f: Any, *limits: Any, given: Given = (), strict: bool = False) -
     diagnosis = Diagnosis() if strict else None
     if len(limits) > 1:
         integrals = [_checked(f, (limit,)) for limit in limits]
-        answer = _solve_several(integrals[0][0], [i[1:] for i in integrals], Facts(relations(given)))
+        answer = _solve_several(integrals[0][0], [i[1:] for i in integrals], Facts(relations(given)), diagnosis)
     else:
         answer = _solve(*_checked(f, limits), Facts(relations(given)), diagnosis)
     if answer is None and diagnosis is not None:

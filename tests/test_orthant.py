@@ -369,3 +369,35 @@ def test_same_output_for_every_hash_seed() -> None:
         for seed in ("0", "7")
     }
     assert len(outputs) == 1 and "nan" not in outputs.pop()
+
+
+@pytest.mark.parametrize(
+    ("f", "infinity"),
+    [
+        (exp(-x * y), oo),
+        (-1 / (1 + x + y), -oo),
+        (x ** Rational(-3, 2) * exp(-x - y), oo),
+        (exp(-x - y) / (x + y) ** 2, oo),
+        (sqrt(1 + x + y) * exp(-x), oo),
+        (besselk(0, x * y), oo),
+        (exp(-x - y) * x ** (-a - 1), oo),
+    ],
+    ids=str,
+)
+def test_integrands_of_one_sign_that_diverge(f: Expr, infinity: Expr) -> None:
+    # growth along a ray; SymPy itself gives oo or nan for most of these
+    assert integrate(f, *ORTHANT2) == infinity
+
+
+def test_nested_ranges_by_tonelli() -> None:
+    # McKay's bivariate gamma density, from memory: Kotz, Balakrishnan and Johnson (2000), 48.3.1
+    f = x ** (a - 1) * (y - x) ** (b - 1) * exp(-y)
+    assert closed_form(f, (x, 0, y), (y, 0, oo)).value == gamma(a) * gamma(b)
+    # DLMF 25.2.1 at s = 2: int int 1/(1 - x*y) over the unit square
+    assert closed_form(1 / (1 - x * y), (x, 0, 1), (y, 0, 1)).value == pi**2 / 6
+    # not of one sign, and no exact order is shown
+    assert closed_form(sin(x * y), (x, 0, 1), (y, 0, 2)) is None
+
+
+def test_liouville_needs_absolute_convergence() -> None:
+    assert closed_form(cos(x + y) * (x + y) ** Rational(-3, 2), *ORTHANT2) is None

@@ -40,6 +40,11 @@ class Special:
         """Whether g converges conditionally at one end of its strip."""
         return bool(self.product.lam == 0 and self.product.delta != 0)
 
+    @property
+    def real(self) -> bool:
+        """Whether the function is real for a positive argument."""
+        return all(a.is_extended_real for a, _, _ in self.product.factors)
+
     def strip(self) -> tuple[list[Expr], list[Expr]] | None:
         """Bounds of the strip of *absolute* convergence of the transform; None where there is none.
 

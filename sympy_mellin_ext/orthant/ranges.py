@@ -10,10 +10,39 @@ from collections.abc import Sequence
 from dataclasses import replace
 from math import prod
 
-from sympy import Add, DiracDelta, Dummy, Expr, Mul, Pow, S, Symbol, expand, gamma, oo
+from sympy import (
+    Add,
+    DiracDelta,
+    Dummy,
+    Expr,
+    Function,
+    I,
+    Mul,
+    Pow,
+    S,
+    Symbol,
+    atan,
+    besselk,
+    cosh,
+    coth,
+    csch,
+    erf,
+    erfc,
+    exp,
+    expand,
+    expint,
+    gamma,
+    log,
+    oo,
+    polylog,
+    sech,
+    sinh,
+    tanh,
+    uppergamma,
+)
 
 from ..closed_form import ClosedForm, Step
-from ..problem import Problem
+from ..problem import Diagnosis, Problem
 from ..region import Facts, Region, real_part
 from ..strategies.registry import attempt
 from ..strategies.tidy import tidy
@@ -22,13 +51,18 @@ from .iterated import iterated
 from .polynomial import read_monomial, read_polynomial
 from .reader import read_products
 from .strategy import NAME, integrate_orthant
+from .system import unbounded
 
 _CHENG_WU = "Cheng and Wu, Expanding Protons (1987)"
 Limits = Sequence[tuple[Symbol, Expr, Expr]]
 
 
-def solve_several(f: Expr, limits: Limits, facts: Facts) -> ClosedForm | None:
+def solve_several(
+    f: Expr, limits: Limits, facts: Facts, diagnosis: Diagnosis | None = None
+) -> ClosedForm | None:
     """The integral of ``f`` over several variables, innermost limits first, or None.
+
+    What is shown to diverge is noted in ``diagnosis``.
 
     Examples
     --------
@@ -46,8 +80,13 @@ def solve_several(f: Expr, limits: Limits, facts: Facts) -> ClosedForm | None:
     answer = _positive_ranges(f, limits, facts)
     if answer is not None or f.has(DiracDelta):
         return answer
-    if all(a is S.Zero and b is oo for _, a, b in limits) and read_products(f, names, facts):
-        return None  # whatever one variable after another gives has been tried
+    if all(a is S.Zero and b is oo for _, a, b in limits):
+        products = read_products(f, names, facts)
+        if products:  # whatever one variable after another gives has been tried
+            infinity = unbounded(products, facts)
+            if infinity is not None and diagnosis is not None:
+                Problem(f, names[0], facts=facts, diagnosis=diagnosis).diverges("its growth in some direction", infinity)
+            return None
     return iterated(f, limits, facts)
 
 
@@ -149,7 +188,7 @@ def _dirichlet(f: Expr, t: Sequence[Symbol], upper: Expr, facts: Facts) -> Close
             powers = [p + e for p, e in zip(powers, single.exponents, strict=True)]
     tau = Dummy("tau", positive=True)
     g = Mul(*others).subs(t[-1], tau - Add(*t[:-1]))
-    if g.has_free(*t):
+    if g.has_free(*t) or not _steady(g):
         return None
     alphas = [(p + 1).expand() for p in powers]
     total = Add(*alphas).expand()
@@ -166,6 +205,17 @@ def _dirichlet(f: Expr, t: Sequence[Symbol], upper: Expr, facts: Facts) -> Close
         answer, value=tidy(answer.value), condition=region.to_boolean(), strip=None, strategy=NAME,
         steps=(step, *inner.steps), sources=(LIOUVILLE, *inner.sources),
     )  # fmt: skip
+
+
+# Functions that, with real arguments, do not oscillate at either end: an integral of them converges absolutely.
+_STEADY = (exp, log, sinh, cosh, tanh, coth, sech, csch, besselk, erf, erfc, expint, uppergamma, atan, polylog)
+
+
+def _steady(g: Expr) -> bool:
+    """Whether a function of one positive variable keeps its sign near both ends of its range."""
+    if g.has(I):
+        return False
+    return all(isinstance(node, _STEADY) for node in g.atoms(Function))
 
 
 def _projective(

@@ -22,7 +22,7 @@ from sympy.logic.boolalg import Boolean
 
 from ..closed_form import Step
 from ..matching.reader import sector
-from ..region import Facts, project, real_part
+from ..region import Facts, Region, project, real_part
 from .integrand import Product, Special
 from .linear import fraction, rational, reduced
 from .polynomial import Polynomial
@@ -247,4 +247,42 @@ def _projected(
     return [*rows, *system.positive], system.booleans
 
 
-__all__ = ["Form", "Gammas", "Scales", "System", "region_of"]
+
+def unbounded(products: Sequence[Product], facts: Facts) -> Expr | None:
+    """oo or -oo where an integrand of one sign is shown to have no finite integral; else None."""
+    if len(products) != 1 or products[0].tilts:
+        return None
+    (product,) = products
+    c = product.coefficient
+    sign = facts.sign(c) if c.is_extended_real else None
+    signs_known = all(facts.sign(p) is not None for _, p in product.sums if p.is_extended_real)
+    if sign not in (1, -1) or not signs_known or not product.positive(facts) or not product.rational():
+        return None
+    if not all(e.is_extended_real for e in (*product.powers, *(p for _, p in product.sums))):
+        return None
+    if not all(s.name in _POSITIVE_KERNELS and not s.conditions() and s.real for s in product.specials):
+        return None
+    return sign * S.Infinity if _diverges(product, facts) else None
+
+
+_POSITIVE_KERNELS = ("exp", "besselk", "erfc")
+
+
+def _diverges(product: Product, facts: Facts) -> bool:
+    """Whether the exponents lie outside the Minkowski sum of the strips (positive kernels: exactly then)."""
+    for place, (base, p) in enumerate(product.sums):
+        if facts.sign(p) in (0, -1):
+            rest = replace(product, sums=product.sums[:place] + product.sums[place + 1 :])
+            moved = (tuple((b - p * a).expand() for a, b in zip(e, rest.powers, strict=True)) for _, e in base)
+            return any(_diverges(replace(rest, powers=powers), facts) for powers in moved)
+    system = System.of(product, facts)
+    if system is None:
+        return False
+    first = next(system.solutions(), None) if product.index >= 0 else None
+    if first is None:
+        return True  # some direction in which nothing decays
+    projected = _projected(system, first[0], first[2])
+    return projected is not None and Region(facts).positive(*projected[0]).empty
+
+
+__all__ = ["Form", "Gammas", "Scales", "System", "region_of", "unbounded"]
