@@ -11,6 +11,11 @@ from typing import TYPE_CHECKING, Any, Protocol
 from sympy import Basic, Expr, Symbol
 from sympy.logic.boolalg import Boolean
 
+# Theorems that steps of many strategies use.
+CHANGE = "change of variable"
+SYMMETRY = "symmetry of the integrand"
+ADDITIVITY = "additivity of the integral in its range"
+
 if TYPE_CHECKING:
     from .matching import Term
     from .pieces import Piece
@@ -39,7 +44,7 @@ class SeriesTransform:
         return value
 
 
-@dataclass(frozen=True, eq=False)
+@dataclass(frozen=True)
 class Total:
     """Finite parts of a sum of pieces, with what survives and what cancels at 0 and at oo.
 
@@ -51,15 +56,18 @@ class Total:
     at_infinity: Edge
     reference: Expr
 
+    def __hash__(self) -> int:
+        return hash((len(self.pieces), self.reference))  # the edges are lists
 
-@dataclass(frozen=True, eq=False)
+
+@dataclass(frozen=True)
 class Contour:
     """Terms with two kernels each, whose integrals are contour integrals of two transforms."""
 
     terms: tuple[Term, ...]
 
 
-@dataclass(frozen=True, eq=False)
+@dataclass(frozen=True)
 class Question:
     """An integral that was handed on after a change of variable or of range."""
 
