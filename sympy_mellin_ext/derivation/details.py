@@ -8,7 +8,26 @@ from __future__ import annotations
 from collections.abc import Iterator, Sequence
 from typing import Any, NamedTuple
 
-from sympy import Abs, Basic, Dummy, Expr, I, Integral, Max, Min, Mul, Pow, Rational, S, Symbol, Tuple, cos, exp, log, oo
+from sympy import (
+    Abs,
+    Basic,
+    Dummy,
+    Expr,
+    I,
+    Integral,
+    Max,
+    Min,
+    Mul,
+    Pow,
+    Rational,
+    S,
+    Symbol,
+    Tuple,
+    cos,
+    exp,
+    log,
+    oo,
+)
 
 from ..gamma import GammaProduct
 from ..matching import Kernel, Term, Wave
@@ -77,8 +96,7 @@ def plain(value: Any) -> Any:
 
 def _names(name: str) -> Iterator[str]:
     yield name
-    for letter in "tuvwyz":
-        yield letter
+    yield from "tuvwyz"
     count = 1
     while True:
         yield f"{name}_{count}"

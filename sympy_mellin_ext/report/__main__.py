@@ -22,6 +22,7 @@ def records(entries: Sequence[Any]) -> Iterator[Record | dict[str, Any]]:
         except Refusal as reason:
             yield {"name": entry.name, "status": "refused", "reason": str(reason), **entry.described()}
             continue
+        assert answer is not None
         yield Record(entry.name, answer, entry.sweep, entry.note)
 
 

@@ -69,7 +69,7 @@ class Card:
     seconds: float = 5.0
 
 
-def card(record: Record | Mapping[str, Any]) -> Card:
+def card(record: Record | tuple[str, Any] | Mapping[str, Any]) -> Card:
     """What there is to say about a record.
 
     Raises

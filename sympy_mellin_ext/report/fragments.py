@@ -10,7 +10,7 @@ from sympy import Basic, Integral, latex
 from ..closed_form import ClosedForm
 from ..derivation.document import Line, Paragraph, document
 from .card import Card, Certificate
-from .mathml import mathml
+from .mathml import mathml, presentation
 
 _GREEK = {"Lambda": "Λ", "Delta": "Δ", "kappa(sigma)": "κ(σ)"}
 
@@ -77,7 +77,7 @@ def equation(left: Any, right: Any) -> str:
     """``left = right`` as one displayed formula, which may be scrolled where it is wider than the page."""
     if not isinstance(left, Basic) or not isinstance(right, Basic):
         return f'<div class="display">{formula(left)} = {formula(right)}</div>'
-    inner = mathml(left)[len("<math>") : -len("</math>")] + "<mo>=</mo>" + mathml(right)[len("<math>") : -len("</math>")]
+    inner = f"{presentation(left)}<mo>=</mo>{presentation(right)}"
     return f'<div class="display" tabindex="0"><math display="block"><mrow>{inner}</mrow></math></div>'
 
 
@@ -85,7 +85,9 @@ def article(found: Card, number: int, pictures: Sequence[tuple[str, str]] = ()) 
     """One integral of the page; ``pictures`` are (svg, caption)."""
     value = next((line for line in found.result if line.label == "value"), None)
     rest = [line for line in found.result if line is not value]
-    shown = equation(found.integral, value.value) if value else f'<div class="display">{formula(found.integral, True)}</div>'
+    shown = f'<div class="display">{formula(found.integral, True)}</div>'
+    if value is not None:
+        shown = equation(found.integral, value.value)
     parts = [f'<article id="i{number}"><h2><span class="count">{number}</span> {escape(found.name)}</h2>']
     if found.note:
         parts.append(f"<p>{escape(found.note)}</p>")
@@ -108,7 +110,7 @@ def notebook(answer: ClosedForm) -> str:
     integral = told.integral
     assert isinstance(integral, Integral)
     region = "".join(
-        f"<div>{escape(line.label)} {formula(line.value) if not isinstance(line.value, str) else escape(line.value)}</div>"
+        f"<div>{escape(line.label)} {escape(line.value) if isinstance(line.value, str) else formula(line.value)}</div>"
         for line in told.result[1:]
     )
     title = escape(f"{latex(integral)} = {latex(answer.value)}", quote=True)

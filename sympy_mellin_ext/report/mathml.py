@@ -3,7 +3,7 @@ from __future__ import annotations
 
 from typing import Any
 
-from sympy import Basic, Expr, Integer, Mul, S, Tuple, fraction
+from sympy import Basic, Expr, Integer, Mul, S, fraction
 from sympy.printing.mathml import MathMLPresentationPrinter
 
 # Letters with the order as index; letters with all arguments in parentheses.
@@ -20,8 +20,8 @@ _NAMED = {
 # Names that HTML knows and XML does not, and signs that read better.
 _ENTITIES = {
     "&dd;": "d", "&ExponentialE;": "e", "&ImaginaryI;": "i", "&InvisibleTimes;": "&#x2062;", "&pi;": "&#960;",
-    "&Infinity;": "&#8734;", "<mn>-": "<mn>&#8722;", "<mo>-</mo>": "<mo>&#8722;</mo>", "<mi>True</mi>": "<mtext>true</mtext>",
-    "<mo>></mo>": "<mo>&gt;</mo>", "&#8476;": "Re", "&#8465;": "Im",
+    "&Infinity;": "&#8734;", "<mn>-": "<mn>&#8722;", "<mo>-</mo>": "<mo>&#8722;</mo>",
+    "<mi>True</mi>": "<mtext>true</mtext>", "<mo>></mo>": "<mo>&gt;</mo>", "&#8476;": "Re", "&#8465;": "Im",
 }  # fmt: skip
 
 
@@ -118,10 +118,10 @@ class Printer(MathMLPresentationPrinter):
         return row
 
     def _print_Pow(self, e: Any) -> Any:
-        if e.exp.is_Rational and e.exp.is_Integer is False or e.exp == -1:
+        if (e.exp.is_Rational and not e.exp.is_Integer) or e.exp == -1:
             return super()._print_Pow(e)
         base = e.base
-        closed = base.is_Symbol or (base.is_Integer and base.is_nonnegative) or (base.is_Function and not e.exp.is_Integer)
+        closed = base.is_Symbol or (base.is_Integer and base.is_nonnegative)
         body = self._print(base)
         if not closed:
             body = self._row(self._element("mo", "("), body, self._element("mo", ")"))
@@ -141,13 +141,16 @@ def mathml(value: Any, block: bool = False) -> str:
     >>> mathml(Symbol('x')/2)
     '<math><mfrac><mi>x</mi><mn>2</mn></mfrac></math>'
     """
-    value = value if isinstance(value, Basic) else Integer(value)
-    text = Printer().doprint(value)
-    if isinstance(value, Tuple):
-        text = text.replace("<mrow/>", "")
-    for old, new in _ENTITIES.items():
-        text = text.replace(old, new)
+    text = presentation(value)
     return f'<math display="block">{text}</math>' if block else f"<math>{text}</math>"
 
 
-__all__ = ["mathml"]
+def presentation(value: Any) -> str:
+    """The inside of the ``math`` element."""
+    text = Printer().doprint(value if isinstance(value, Basic) else Integer(value))
+    for old, new in _ENTITIES.items():
+        text = text.replace(old, new)
+    return text
+
+
+__all__ = ["mathml", "presentation"]

@@ -266,7 +266,8 @@ def sweep_picture(answer: ClosedForm, sweep: Any, seconds: float = 5.0) -> Pictu
     if any(groups) and len(groups) > 1:
         figure.legend(loc="outside upper center", ncols=3, frameon=False, fontsize=8)
     only = next(iter(groups)) if len(groups) == 1 else ""
-    caption = f"Closed form (line) and quadrature (dots) over {v}{', ' + only if only else ''}; below, the relative difference"
+    over = f"{v}, {only}" if only else str(v)
+    caption = f"Closed form (line) and quadrature (dots) over {over}; below, the relative difference"
     left_out = len(groups) - len(_CURVES)
     if left_out > 0:
         caption += f"; {left_out} more curves are left out"

@@ -7,6 +7,7 @@ from sympy import Add, Expr, Pow, S, Symbol, exp, log, preorder_traversal, sin, 
 from ...closed_form import ClosedForm, Step
 from ...matching.monomials import monomials
 from ...problem import Problem
+from ...steps import ADDITIVITY, CHANGE
 from ..registry import MAX_DEPTH
 from .combined import added
 from .finite import fresh, handed_on
@@ -39,7 +40,7 @@ class HalfLineChanges:
         t, p = fresh(problem, real=True), fresh(problem, positive=True)
         inner = _logarithms_plain(f.xreplace({x: p}), p).xreplace({log(p): t}).xreplace({p: exp(t)}) * exp(t)
         answer = gaussian(problem, inner, t)
-        return None if answer is None else added(problem, [(S.One, answer)], Step("substitution x = exp(t)", "change of variable"))
+        return None if answer is None else added(problem, [(S.One, answer)], Step("substitution x = exp(t)", CHANGE))
 
     @staticmethod
     def _nested(problem: Problem, f: Expr, x: Symbol) -> ClosedForm | None:
@@ -51,7 +52,7 @@ class HalfLineChanges:
             return None
         t, inner = changed
         answer = handed_on(problem, inner, t, S.One)
-        return None if answer is None else added(problem, [(S.One, answer)], Step("substitution t = exp(x)", "change of variable"))
+        return None if answer is None else added(problem, [(S.One, answer)], Step("substitution t = exp(x)", CHANGE))
 
     @staticmethod
     def _root(problem: Problem, f: Expr, x: Symbol) -> ClosedForm | None:
@@ -91,7 +92,7 @@ class HalfLineChanges:
             else added(
                 problem,
                 [(S.One, answer)],
-                Step("substitution u = " + str(sqrt(base.xreplace({x: Symbol(x.name)}))), "change of variable"),
+                Step("substitution u = " + str(sqrt(base.xreplace({x: Symbol(x.name)}))), CHANGE),
             )
         )
 
@@ -138,7 +139,7 @@ def split(problem: Problem) -> ClosedForm | None:
         answers.append((S.One, found))
     if not answers:
         return ClosedForm(S.Zero, strategy=HalfLineChanges.name)
-    return added(problem, answers, Step("range split at the break points", "additivity of the integral in its range"))
+    return added(problem, answers, Step("range split at the break points", ADDITIVITY))
 
 
 def constant(problem: Problem, c: Expr, lower: Expr, upper: Expr) -> ClosedForm | None:

@@ -41,6 +41,7 @@ from sympy.logic.boolalg import Boolean
 from ...closed_form import ClosedForm, Step
 from ...problem import Problem
 from ...region import Facts, Region
+from ...steps import SYMMETRY
 from .combined import added
 from .finite import fresh, handed_on, shown_divergent
 from .unit import solve_unit
@@ -149,7 +150,7 @@ def _first_moment(problem: Problem, g: Expr, first: int, last: int, rate: Expr) 
         return None
     answer = _solved(problem, g, first, last, rate)
     centre = (problem.lower + problem.upper) / 2
-    return None if answer is None else added(problem, [(centre, answer)], Step("reflection about the centre", "symmetry of the integrand"))
+    return None if answer is None else added(problem, [(centre, answer)], Step("reflection about the centre", SYMMETRY))
 
 
 def _whole(turns: Expr) -> int | None:
@@ -269,7 +270,7 @@ def _complementary(problem: Problem, g: Expr) -> ClosedForm | None:
     total = cancel(together(g + g.xreplace({_SIN: _COS, _COS: _SIN})))
     if total.has(_SIN, _COS):
         return None
-    return ClosedForm(total * pi / 4, S.true, None, "ranges", (Step("reflection x -> pi/2 - x", "symmetry of the integrand"),))
+    return ClosedForm(total * pi / 4, S.true, None, "ranges", (Step("reflection x -> pi/2 - x", SYMMETRY),))
 
 
 def _by_halves(problem: Problem, g: Expr, first: int, last: int, rate: Expr) -> ClosedForm | None:

@@ -10,7 +10,7 @@ from sympy.logic.boolalg import Boolean
 from ...closed_form import ClosedForm, Step
 from ...problem import Problem
 from ...region import Facts
-from ...steps import Question
+from ...steps import CHANGE, SYMMETRY, Question
 from ..registry import MAX_DEPTH, attempt
 from .combined import added, replaced
 from .unit import solve_unit
@@ -29,7 +29,7 @@ def handed_on(
     seen = len(problem.diagnosis.proved) if problem.diagnosis is not None else 0
     answer = attempt(inner)
     if answer is not None:
-        question = Step("integral to be done", "change of variable or of range", subject=Question(integrand, (x, lower, upper)))
+        question = Step("integral to be done", CHANGE, subject=Question(integrand, (x, lower, upper)))
         return replace(answer, steps=(question, *answer.steps))
     if problem.diagnosis is not None and inner.depth in problem.diagnosis.proved[seen:]:
         return problem.diverges("after a change of variable, or over a part of the range")
@@ -49,7 +49,7 @@ def fresh(problem: Problem, **assumptions: bool) -> Dummy:
 def doubled(problem: Problem, answer: ClosedForm | None, factor: Expr, action: str) -> ClosedForm | None:
     """``factor`` times an answer."""
     return None if answer is None else added(
-        problem, [(factor, answer)], Step(action, "symmetry of the integrand" if factor != 1 else "change of variable")
+        problem, [(factor, answer)], Step(action, SYMMETRY if factor != 1 else CHANGE)
     )
 
 

@@ -36,6 +36,7 @@ from sympy import (
 from ...closed_form import ClosedForm, Step
 from ...problem import Problem
 from ...region import Region, real_part
+from ...steps import ADDITIVITY, CHANGE, SYMMETRY
 from .combined import added
 from .finite import fresh, handed_on
 
@@ -57,7 +58,7 @@ def on_line(problem: Problem) -> ClosedForm | None:
         t, inner = changed
         answer = handed_on(problem, inner, t)
         if answer is not None:
-            return added(problem, [(S.One, answer)], Step("substitution t = exp(x)", "change of variable"))
+            return added(problem, [(S.One, answer)], Step("substitution t = exp(x)", CHANGE))
     centre = _centre(f, y)
     if centre is not None and centre is not S.Zero:
         f = _shifted(f, y, centre)
@@ -80,13 +81,13 @@ def _halves(problem: Problem, f: Expr, y: Symbol) -> ClosedForm | None:
     if answer is None:
         return None
     if flipped == f or left == right:
-        return added(problem, [(S(2), answer)], Step("even integrand: twice the half line", "symmetry of the integrand"))
+        return added(problem, [(S(2), answer)], Step("even integrand: twice the half line", SYMMETRY))
     if flipped == -f or left == -right:
-        return added(problem, [(S.Zero, answer)], Step("odd integrand", "symmetry of the integrand"))
+        return added(problem, [(S.Zero, answer)], Step("odd integrand", SYMMETRY))
     other = handed_on(problem, left, t)
     if other is None:
         return None
-    return added(problem, [(S.One, answer), (S.One, other)], Step("two half lines", "additivity of the integral in its range"))
+    return added(problem, [(S.One, answer), (S.One, other)], Step("two half lines", ADDITIVITY))
 
 
 # -- exp(quadratic) times polynomials and waves --------------------------------------------------------------
