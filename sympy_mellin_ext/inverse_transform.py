@@ -14,6 +14,7 @@ from sympy import (
     Add,
     Expr,
     I,
+    Mul,
     Pow,
     S,
     Symbol,
@@ -22,7 +23,6 @@ from sympy import (
     cot,
     csc,
     exp,
-    expand_mul,
     factorial,
     gamma,
     hyper,
@@ -37,7 +37,7 @@ from sympy import (
 )
 
 from .arguments import Given, expression, relations, symbol
-from .expansions.arithmetic import NotMeromorphic
+from .expansions.arithmetic import NotMeromorphic, vanishes
 from .expansions.poles import in_gammas, principal_part
 from .expansions.poles import side as side_of_strip
 from .gamma import Factor, GammaProduct
@@ -98,23 +98,62 @@ def inverse_transform(
     G = expression(G, "G")
     if G.has_free(x):
         raise ValueError(f"G must be free of {x}")
-    total = []
-    for term in Add.make_args(expand_mul(G) if G.is_Add else G):
-        value = _inverse_of_product(term, s, x, lower, upper, facts)
-        if value is None:
+    return _inverse(_distributed(G, s), s, x, lower, upper, facts)
+
+
+class _PoleInside(ValueError):
+    def __init__(self, pole: Expr, lower: Expr, upper: Expr) -> None:
+        super().__init__(f"the pole at {pole} lies inside the strip ({lower}, {upper})")
+        self.pole = pole
+
+
+def _distributed(G: Expr, s: Symbol) -> Expr:
+    """Sums multiplied out where they are no polynomials."""
+    if G.is_Add:
+        return Add(*(_distributed(t, s) for t in G.args))
+    sums = [f for f in Mul.make_args(G) if f.is_Add and not f.is_polynomial(s)]
+    if not sums:
+        return G
+    rest = Mul(*(f for f in Mul.make_args(G) if f is not sums[0]))
+    return Add(*(_distributed(rest * t, s) for t in sums[0].args))
+
+
+def _inverse(G: Expr, s: Symbol, x: Symbol, lower: Expr, upper: Expr, facts: Facts) -> Expr | None:
+    products = []
+    for term in Add.make_args(G):
+        product = gamma_product_of(term, s)
+        if product is None:
             return None
-        total.append(value)
+        products.append(product)
+    total = []
+    try:
+        for product in products:
+            value = _inverse_of_product(product, s, x, lower, upper, facts)
+            if value is None:
+                return None
+            total.append(value)
+    except _PoleInside as error:
+        if not G.is_Add or not _regular_at(G, s, error.pole):
+            raise
+        # poles of the terms that cancel: on either side of them the terms belong to the same function
+        place = real_part(error.pole)
+        left = _inverse(G, s, x, lower, place, facts)
+        return left if left is not None else _inverse(G, s, x, place, upper, facts)
     return Add(*total)
 
 
+def _regular_at(G: Expr, s: Symbol, pole: Expr) -> bool:
+    try:
+        return all(vanishes(c) for c in principal_part(G, s, pole))
+    except NotMeromorphic:
+        return False
+
+
 def _inverse_of_product(
-    term: Expr, s: Symbol, x: Symbol, lower: Expr, upper: Expr, facts: Facts
+    product: GammaProduct, s: Symbol, x: Symbol, lower: Expr, upper: Expr, facts: Facts
 ) -> Expr | None:
     from .inverse import inverse_mellin
 
-    product = gamma_product_of(term, s)
-    if product is None:
-        return None
     sided = on_strip(product, lower, upper, facts)
     if sided is None or not sided.factors or not _is_transform(sided, lower, upper, facts):
         return None
@@ -342,7 +381,7 @@ def _side(product: GammaProduct, pole: Expr, lower: Expr, upper: Expr, facts: Fa
         return 0
     place = real_part(pole)
     if all(b.is_infinite or facts.sign((c * (place - b)).expand()) == 1 for b, c in ((lower, 1), (upper, -1))):
-        raise ValueError(f"the pole at {pole} lies inside the strip ({lower}, {upper})")
+        raise _PoleInside(pole, lower, upper)
     return None
 
 

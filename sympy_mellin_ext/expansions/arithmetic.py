@@ -23,6 +23,7 @@ from sympy import (
     Mul,
     Piecewise,
     Pow,
+    Rational,
     S,
     Subs,
     Symbol,
@@ -42,6 +43,7 @@ from sympy import (
     harmonic,
     log,
     loggamma,
+    meijerg,
     polygamma,
     rf,
     sec,
@@ -72,10 +74,26 @@ class TooFewTerms(NotMeromorphic):
 
 
 def vanishes(c: Expr) -> bool:
-    """Exact zero test of a coefficient."""
+    """Zero test of a coefficient: exact where it says yes; a number at a sample point is enough to say no."""
     from ..strategies.finite_part import vanishes as exactly
 
-    return exactly(c)
+    if c.is_Number or c.is_Symbol:
+        return bool(c.is_zero)
+    return not _nonzero_somewhere(c) and exactly(c)
+
+
+def _nonzero_somewhere(c: Expr) -> bool:
+    point = {}
+    for n, s in enumerate(sorted(c.free_symbols, key=str)):
+        size = Rational(137 + 61 * n, 101)
+        point[s] = -size if s.is_negative else size if not s.is_integer else Integer(n + (3 if s.is_odd else 2))
+    try:
+        value = c.xreplace(point).evalf(8)
+    except (ValueError, TypeError, ArithmeticError, NotImplementedError):  # no number for one of its functions
+        return False
+    # a Float of one bit is what is left of a cancellation
+    parts = value.as_real_imag()
+    return all(p.is_Number for p in parts) and any(p.is_Float and p._prec > 1 and p != 0 for p in parts)
 
 
 def series_of(expr: Expr, eps: Dummy, terms: int) -> Series:
@@ -336,6 +354,8 @@ class _Expansion:
         if len(moving) != 1 or type(f).__name__ in _DISCONTINUOUS:
             raise NotMeromorphic(f"no series of {type(f).__name__} in these arguments")
         value, rest = self.split(self.of(f.args[moving[0]]))
+        if isinstance(f, meijerg) and value.is_zero:
+            raise NotMeromorphic("a branch point of meijerg")
         t = Dummy("t")
         arguments = list(f.args)
         arguments[moving[0]] = t

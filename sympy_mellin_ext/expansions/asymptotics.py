@@ -26,6 +26,7 @@ from sympy import (
     O,
     S,
     Symbol,
+    binomial,
     cos,
     exp,
     factorial,
@@ -201,7 +202,12 @@ def _of_term(term: Term, end: int, order: Expr, beyond: dict[Expr, None], x: Sym
     if sum(bool(w) for w in waves) > 1 and any(w.has(cos) for shapes in waves for w in shapes):
         return None  # the product of two waves may hold powers again
     pieces = [_piece(k) for k in term.kernels]
-    leads = [_lead(p, end) for p in pieces]
+    if any(k.product.constant == 0 and not _polynomial(k) for k in term.kernels):
+        return None
+    leads = [
+        _lead(p, end) if k.product.constant != 0 else min(end * numeric_part(q) for q, _ in _binomial(k))
+        for k, p in zip(term.kernels, pieces, strict=True)
+    ]
     for shapes in waves:
         for shape in shapes:
             beyond[shape * x**term.power] = None
@@ -209,15 +215,28 @@ def _of_term(term: Term, end: int, order: Expr, beyond: dict[Expr, None], x: Sym
         return {}
     reach = end * numeric_part(term.power) + Add(*leads)
     total: _Terms = {(term.power, term.logs): term.coefficient}
-    for piece, lead in zip(pieces, leads, strict=True):
-        series = _powers(piece, end, order - reach + lead)
+    rest = Add(*leads)
+    for kernel, piece, lead in zip(term.kernels, pieces, leads, strict=True):
+        rest -= lead
+        series = _powers(piece, end, order - reach + lead) if kernel.product.constant != 0 else _binomial(kernel)
         product: _Terms = {}
         for (p, k), c in total.items():
             for (q, l), d in series.items():
                 key = ((p + q).expand(), k + l)
-                product[key] = product.get(key, S.Zero) + c * d
-        total = {key: c for key, c in product.items() if end * numeric_part(key[0]) <= order}
+                if end * numeric_part(key[0]) + rest <= order:
+                    product[key] = product.get(key, S.Zero) + c * d
+        total = product
     return {key: c for key, c in total.items() if end * numeric_part(key[0]) <= order}
+
+
+def _binomial(kernel: Kernel) -> _Terms:
+    """A polynomial ``(1 + scale*x**ratio)**n``, whose transform vanishes."""
+    n = int(-kernel.arguments[0])
+    return {(kernel.ratio * k, 0): binomial(n, k) * kernel.product.scale**k for k in range(n + 1)}
+
+
+def _polynomial(kernel: Kernel) -> bool:
+    return kernel.name == "power" and kernel.wave is None and (-kernel.arguments[0]).is_Integer
 
 
 def _piece(k: Kernel) -> Piece:

@@ -13,6 +13,10 @@ from .arithmetic import NotMeromorphic, TooFewTerms, series_of
 
 # Where so many leading coefficients cancel, the expression is taken to vanish or to be out of reach.
 _MOST_TERMS = 40
+# Gauss' theorem and the recurrence write digammas out at small rationals (DLMF 5.4.19, 5.15.5); elsewhere
+# the sums would be longer than what they stand for.
+_LARGEST_DENOMINATOR, _FARTHEST = 6, 12
+_LONGEST = 300
 
 
 @dataclass(frozen=True)
@@ -123,12 +127,14 @@ def named(c: Expr) -> Expr:
     }
     if moved:
         c = c.xreplace(moved)
+    if c.count_ops() > _LONGEST:
+        return c
     expanded = c.expand(log=False, func=False, trig=False, power_base=False, power_exp=False)
     return expanded if expanded.count_ops() <= c.count_ops() or expanded.is_number else c
 
 
 def _known(p: Expr) -> Expr:
-    if not isinstance(p, polygamma):
+    if not isinstance(p, polygamma) or p.args[1].q > _LARGEST_DENOMINATOR or not 0 < p.args[1] <= _FARTHEST:
         return p
     n, z = p.args
     if z > 1:  # DLMF 5.15.5

@@ -75,7 +75,10 @@ def _asked_anew(answer: ClosedForm, point: Mapping[Symbol, Expr]) -> Expr | None
         return None
     given = tuple(g for g in (c.subs(point) for c in answer.given) if g not in (True, False))
     facts = Facts(given)
-    found = _solve(integrand, *limits[0], facts, None) if len(limits) == 1 else _solve_several(integrand, limits, facts)
+    if len(limits) == 1:
+        found = _solve(integrand, *limits[0], facts, None)
+    else:
+        found = _solve_several(integrand, limits, facts, None)
     if found is None or found.value.has(*_BAD) or found.special:
         return None
     return found.value

@@ -166,7 +166,8 @@ class MpmathPrinter(Printer):
         "airyaiprime": "mp.airyai({0}, derivative=1)", "airybiprime": "mp.airybi({0}, derivative=1)",
         "stieltjes": "mp.stieltjes(int({0}), *[{all}][1:])", "chebyshevt": "mp.chebyt", "chebyshevu": "mp.chebyu",
         "assoc_laguerre": "mp.laguerre({0}, {1}, {2})", "harmonic": "(mp.psi(0, {0} + 1) + mp.euler)",
-        "floor": "mp.floor", "ceiling": "mp.ceil", "Heaviside": "mp.mpf({0} > 0)", "sinc": "mp.sinc",
+        "euler": "mp.eulernum(int(mp.re({0})))", "floor": "mp.floor", "ceiling": "mp.ceil",
+        "Heaviside": "mp.mpf({0} > 0)", "sinc": "mp.sinc",
         "jn": "(mp.sqrt(mp.pi/(2*{1}))*mp.besselj({0} + mp.mpf(1)/2, {1}))",
         "yn": "(mp.sqrt(mp.pi/(2*{1}))*mp.bessely({0} + mp.mpf(1)/2, {1}))",
     }  # fmt: skip
