@@ -5,9 +5,10 @@ from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass, field, replace
 from typing import TYPE_CHECKING, Any
 
-from sympy import And, Eq, Expr, Integral, Piecewise, S, Symbol, latex
+from sympy import And, Eq, Expr, Integral, S, Symbol, latex
 from sympy.logic.boolalg import Boolean
 
+from .branches import piecewise
 from .steps import Step
 
 if TYPE_CHECKING:
@@ -71,9 +72,9 @@ class ClosedForm:
         if self.condition is S.true:
             return self._general()
         if nested:
-            return Piecewise((self._general(), self.condition), (self.integral, True))
+            return piecewise((self._general(), self.condition), (self.integral, S.true))
         branches = [(value, And(where, self._region_at(where))) for where, value in self.special]
-        return Piecewise(*branches, (self.value, self.condition), (self.integral, True))
+        return piecewise(*branches, (self.value, self.condition), (self.integral, S.true))
 
     def _region_at(self, where: Boolean) -> Boolean:
         if isinstance(where, Eq) and isinstance(where.lhs, Symbol):
@@ -220,7 +221,7 @@ class ClosedForm:
         >>> print(closed_form(x**(s - 1)*exp(-x), (x, 0, oo)).derivation())  # doctest: +ELLIPSIS
         Integral: Integral(x**(s - 1)*exp(-x), (x, 0, oo))
         <BLANKLINE>
-        1. Kernel exp(-x), its Mellin transform in s.  [DLMF 5.9.1, 5.9.6, 5.9.7]
+        1. Kernel exp, transform in s.  [DLMF 5.9.1, 5.9.6, 5.9.7]
         ...
         """
         from .derivation import render
@@ -229,7 +230,7 @@ class ClosedForm:
 
     def _general(self) -> Expr:
         branches = [(value, where) for where, value in self.special]
-        return Piecewise(*branches, (self.value, True)) if branches else self.value
+        return piecewise(*branches, (self.value, S.true)) if branches else self.value
 
     def times(self, constant: Expr) -> ClosedForm:
         """The closed form of ``constant`` times the integral."""

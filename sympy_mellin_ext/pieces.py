@@ -9,6 +9,8 @@ from typing import NamedTuple, Protocol
 from sympy import Abs, Add, Expr, I, Mul, S, acos, binomial, chebyshevt, chebyshevu, cos, cot, exp, factorial, pi, sqrt
 from sympy.logic.boolalg import Boolean
 
+from .expanding import expanded
+
 from .gamma import GammaProduct, Ladder
 from .gamma.laurent import Series, cosine_series, cotangent_series, exponential, multiply, power_series
 from .gamma.shortest import positive_power
@@ -85,13 +87,13 @@ class Piece:
             return S.Zero
         u = self.u
         if not u.is_Atom:
-            u = u.expand() if u.is_Mul else u
+            u = expanded(u) if u.is_Mul else u
         front = self.constant if self.ratio is S.One else self.constant / _modulus(self.ratio)
         if self.logs == 0 and self.tilt is None and self.pole_order(u) <= 0:
             if self.wave is None:
                 factors = [front, product.at(u)]
             elif self.pole_order_inside == 1:
-                factors = [front, positive_power(product.scale, -u), pi * cot((pi * u).expand())]
+                factors = [front, positive_power(product.scale, -u), pi * cot(expanded(pi * u))]
             elif u.is_Integer and u.is_positive and self.wave.parts is not None:
                 factors = [front, GammaProduct(product.constant, S.One, product.factors).at(u)]
                 factors.append(_algebraic_wave(self.wave, int(u)))
@@ -109,7 +111,7 @@ class Piece:
         if order and self.tilt is not None:
             order += self.tilt.order
         if self.dirichlet:
-            order += sum(1 for d in self.dirichlet for p in d.poles() if (p - u).expand().is_zero)
+            order += sum(1 for d in self.dirichlet for p in d.poles() if expanded(p - u).is_zero)
         return order
 
     def series(self, u: Expr, terms: int) -> Series:
@@ -148,7 +150,7 @@ class Piece:
             yield self._exponent(ladder.start - n * ladder.step)
 
     def _exponent(self, pole: Expr) -> Expr:
-        return (self.power - self.ratio * pole).expand()
+        return expanded(self.power - self.ratio * pole)
 
     @property
     def plain(self) -> bool:
@@ -159,13 +161,13 @@ class Piece:
         """Whether ``x**exponent`` occurs in the expansions, for a plain piece."""
         if self.product is None:
             return True
-        return self.pole_order(((self.power - exponent) / self.ratio).expand()) > 0
+        return self.pole_order(expanded((self.power - exponent) / self.ratio)) > 0
 
     def coefficients(self, exponent: Expr, end: int) -> list[Expr]:
         """Coefficients of ``x**exponent * log(x)**j``, j = 0, 1, ..., in the expansion at this end."""
         if self.product is None:
             return [S.Zero] * self.logs + [self.constant]
-        u = ((self.power - exponent) / self.ratio).expand()
+        u = expanded((self.power - exponent) / self.ratio)
         order = self.pole_order(u)
         if order == 0:
             return []
@@ -219,7 +221,7 @@ def _modulus(ratio: Expr) -> Expr:
 
 
 def _wave_value(wave: Wave, u: Expr) -> Expr:
-    phase = (wave.angle * u).expand() + wave.phase
+    phase = expanded(wave.angle * u) + wave.phase
     if not wave.real:
         return exp(-I * phase)
     if isinstance(wave.angle, acos):
@@ -257,7 +259,7 @@ def _algebraic_wave(wave: Wave, u: int) -> Expr:
 
 
 def _wave_series(wave: Wave, u: Expr, rate: Expr, terms: int) -> Series:
-    phase = (wave.angle * u).expand() + wave.phase
+    phase = expanded(wave.angle * u) + wave.phase
     if wave.real:
         return cosine_series(phase, wave.angle * rate, terms)
     step = -I * wave.angle * rate
