@@ -74,6 +74,7 @@ def _orders(ranges: Limits) -> Iterator[Limits]:
 
 def _in_order(f: Expr, ranges: Limits, facts: Facts) -> ClosedForm | None:
     condition: Boolean = S.true
+    answer: ClosedForm | None = None
     steps: tuple[Step, ...] = ()
     sources: tuple[str, ...] = (_SOURCE,)
     for place, (x, lower, upper) in enumerate(ranges):
@@ -91,7 +92,7 @@ def _in_order(f: Expr, ranges: Limits, facts: Facts) -> ClosedForm | None:
         steps, sources = (*steps, *answer.steps), (*sources, *answer.sources)
         condition, f = And(condition, answer.condition), answer.value
     region = Region(facts).holds(condition)
-    if region.empty or f.has(*(x for x, _, _ in ranges)):
+    if answer is None or region.empty or f.has(*(x for x, _, _ in ranges)):
         return None
     return replace(
         answer, value=f, condition=region.to_boolean(), strip=None, strategy="iterated", steps=steps,

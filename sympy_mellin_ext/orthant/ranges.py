@@ -85,7 +85,8 @@ def solve_several(
         if products:  # whatever one variable after another gives has been tried
             infinity = unbounded(products, facts)
             if infinity is not None and diagnosis is not None:
-                Problem(f, names[0], facts=facts, diagnosis=diagnosis).diverges("its growth in some direction", infinity)
+                question = Problem(f, names[0], facts=facts, diagnosis=diagnosis)
+                question.diverges("its growth in some direction", infinity)
             return None
     return iterated(f, limits, facts)
 
