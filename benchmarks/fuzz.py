@@ -48,12 +48,12 @@ def examine(seed: int, digits: int = 7, seconds: float = 20, points: int | None 
     record |= {"value": str(answer.value), "condition": str(answer.condition), "strategy": answer.strategy}
     if answer.value.has(I) and answer.value.is_real is False and not f.has(I):
         return record | {"outcome": "wrong", "note": "not real"}
-    chosen = None
-    if points is not None:
-        symbols = (f.free_symbols | limits[1].free_symbols | limits[2].free_symbols) - {limits[0]}
-        chosen = sample(symbols, answer.condition, given, points)
     try:
         with time_limit(2 * seconds):
+            chosen = None
+            if points is not None:
+                symbols = (f.free_symbols | limits[1].free_symbols | limits[2].free_symbols) - {limits[0]}
+                chosen = sample(symbols, answer.condition, given, points)
             certificate = answer.verify(digits, chosen, seconds / 4)
     except OutOfTime:
         return record | {"outcome": "unchecked", "note": "quadrature out of time"}

@@ -67,6 +67,7 @@ class Grammar:
     def __init__(self, seed: int) -> None:
         self.dice = random.Random(seed)
         self.complex_power = self.dice.random() < 0.12
+        self.nu = Symbol("nu", real=True) if self.dice.random() < 0.5 else Symbol("nu", positive=True)
 
     # -- parameters ---------------------------------------------------------------------------------------
 
@@ -88,9 +89,7 @@ class Grammar:
         if roll < 0.55:
             return self.dice.choice((S.Zero, S.Zero, S.One, Integer(2), Rational(1, 2), -Rational(1, 2), Rational(1, 3),
                                      Rational(3, 2), -S.One))
-        if roll < 0.7:
-            return N
-        return Symbol("nu", real=True) if roll < 0.85 else Symbol("nu", positive=True)
+        return N if roll < 0.7 else self.nu
 
     def exponent(self) -> Expr:
         roll = self.dice.random()

@@ -8,7 +8,7 @@ from __future__ import annotations
 
 from typing import Any, NamedTuple
 
-from sympy import Expr, S, Symbol, factorial, gamma, log, pi, polygamma
+from sympy import Add, Expr, S, Symbol, factorial, gamma, ilcm, log, pi, polygamma
 
 from .signature import Signature, as_int, power
 
@@ -78,7 +78,7 @@ def left_series(sig: Signature, w: Symbol) -> ResidueSeries | None:
             n = as_int(a - a0)
             if n is not None:
                 offsets.append(n)
-            elif (a - a0).is_integer:
+            elif _may_be_integer(a - a0):
                 return None  # a double pole at a place that depends on a symbol
             else:
                 rest.append(a)
@@ -100,6 +100,23 @@ def left_series(sig: Signature, w: Symbol) -> ResidueSeries | None:
         if rank == 1:
             tails.append(_tail(sig, base + first, w))
     return ResidueSeries(head, tuple(tails))
+
+
+def _may_be_integer(difference: Expr) -> bool:
+    """Whether it is an integer for some values of its symbols, all of which are integers.
+
+    Other symbols make it one at isolated values only, where the sum of the residues has a limit.
+    """
+    if difference.is_integer or difference.is_Rational:
+        return bool(difference.is_integer)
+    symbols = difference.free_symbols
+    if not symbols or not all(v.is_integer for v in symbols):
+        return False
+    constant, linear = difference.as_coeff_Add()
+    coefficients = [term.as_coeff_Mul() for term in Add.make_args(linear)]
+    if not constant.is_Rational or not all(c.is_Rational and v.is_Symbol for c, v in coefficients):
+        return True
+    return bool((constant * ilcm(1, *(c.q for c, _ in coefficients))).is_integer)
 
 
 def _tail(sig: Signature, a: Any, w: Symbol) -> Tail:

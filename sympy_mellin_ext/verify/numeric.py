@@ -72,7 +72,8 @@ def compiled(expr: Expr, symbols: Sequence[Symbol]) -> Callable[..., Number]:
             table[name] = TABLE[name]
         elif not hasattr(mp, name) and not isinstance(node, AppliedUndef) and not isinstance(node, Piecewise):
             table[name] = _by_evalf(type(node))
-    return lambdify(list(symbols), expr, modules=[table, "mpmath"], cse=False)
+    # dummies, for two symbols of one name may differ in their assumptions
+    return lambdify(list(symbols), expr, modules=[table, "mpmath"], dummify=True, cse=False)
 
 
 def _by_evalf(function: type) -> Callable[..., Number]:
