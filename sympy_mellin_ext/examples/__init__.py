@@ -1,8 +1,9 @@
 """A worked list of integrals: what a crew that keeps measuring buoys at sea has to put into formulas.
 
-The numbers and the crew are invented; the integrals are of the kinds that reliability, radio and wave
-engineers meet.  Formulas that reach a design are to be checked independently by whoever answers for it.
+The list is ``buoys.toml`` beside this file, in the format of :mod:`sympy_mellin_ext.batch`.
 """
-from .buoys import BUOYS, Example
+from pathlib import Path
 
-__all__ = ["BUOYS", "Example"]
+BUOYS = Path(__file__).with_name("buoys.toml")
+
+__all__ = ["BUOYS"]
