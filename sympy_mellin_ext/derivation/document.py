@@ -12,6 +12,10 @@ if TYPE_CHECKING:
     from ..closed_form import ClosedForm
 
 
+# Signs that begin a sentence as they are.
+_SIGNS = ("phi", "theta")
+
+
 class Line(NamedTuple):
     """A formula with its label in words."""
 
@@ -43,9 +47,12 @@ def document(answer: ClosedForm) -> Document:
         lines = [Line(d.label, d.value) for d in details(step)]
         formula = step.formula
         if formula is not None:
-            lines.insert(0 if hasattr(step.result, "as_expr") and not isinstance(step.result, Basic) else len(lines),
-                         Line("", plain(formula)))  # fmt: skip
-        action = step.action[:1].upper() + step.action[1:]
+            if hasattr(step.result, "as_expr") and not isinstance(step.result, Basic):
+                lines.insert(0, Line("G(s)", plain(formula)))
+            else:
+                lines.append(Line("", plain(formula)))
+        word = step.action.partition(" ")[0]
+        action = step.action[:1].upper() + step.action[1:] if word.isalpha() and word not in _SIGNS else step.action
         steps.append(Paragraph(action, step.theorem or "direct", tuple(lines)))
     return Document(Integral(answer.integrand, *answer.limits), tuple(steps), tuple(_result(answer)), answer.sources)
 

@@ -1,6 +1,7 @@
 """A derivation as plain text, as Markdown and as LaTeX."""
 from __future__ import annotations
 
+import re
 from typing import TYPE_CHECKING, Any
 
 from sympy import Basic, Tuple, latex
@@ -17,7 +18,9 @@ _ESCAPES = {
     "^": r"\textasciicircum{}", "~": r"\textasciitilde{}", "<": r"\textless{}", ">": r"\textgreater{}",
     "|": r"\textbar{}",
 }  # fmt: skip
-_GREEK = {"Lambda": r"\Lambda", "Delta": r"\Delta", "kappa(sigma)": r"\kappa(\sigma)"}
+# Labels that are formulas themselves.
+_FORMULA = re.compile(r"(Lambda|Delta|kappa\(sigma\)|phi(_\d+)?\(n\)|c(_\d+)?\(n\+\d+\)/c(_\d+)?\(n\)|G\(s\))(_\d+)?")
+_LETTERS = {"Lambda": r"\Lambda", "Delta": r"\Delta", "kappa": r"\kappa", "sigma": r"\sigma", "phi": r"\varphi"}
 _HEAD = r"""\documentclass{article}
 \usepackage[T1]{fontenc}
 \usepackage[utf8]{inputenc}
@@ -109,7 +112,11 @@ def escaped(text: str) -> str:
 
 
 def _label(label: str, escape: Any) -> str:
-    return f"${_GREEK[label]}$" if label in _GREEK else escape(label)
+    if not _FORMULA.fullmatch(label):
+        return str(escape(label))
+    for name, sign in _LETTERS.items():
+        label = label.replace(name, sign)
+    return f"${label}$"
 
 
 def formula(value: Any) -> str:

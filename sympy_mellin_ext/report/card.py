@@ -7,6 +7,7 @@ from typing import Any
 
 from mpmath import mp
 from sympy import Basic, Expr, Integral, S, Symbol, Tuple, latex, sympify
+from sympy.printing.pretty.pretty_symbology import pretty_symbol
 
 from ..closed_form import ClosedForm
 from ..derivation.document import Line, Paragraph, document
@@ -112,7 +113,12 @@ def certificate_of(record: Record) -> Certificate:
 def where(point: Mapping[Any, Any]) -> str:
     """A point as text."""
     items = sorted(point.items(), key=lambda item: str(item[0]))
-    return ", ".join(f"{k} = {_value(v)}" for k, v in items) or "no parameters"
+    return ", ".join(f"{letter(k)} = {_value(v)}" for k, v in items) or "no parameters"
+
+
+def letter(symbol: Any) -> str:
+    """The name of a symbol, Greek letters as such."""
+    return str(pretty_symbol(str(symbol)))
 
 
 def _value(value: Any) -> str:
@@ -121,7 +127,9 @@ def _value(value: Any) -> str:
 
 
 def _number(value: Any) -> str:
-    return mp.nstr(value, _CERTIFICATE_DIGITS)
+    if abs(mp.im(value)) <= mp.mpf(10) ** -_CERTIFICATE_DIGITS * abs(value):
+        value = mp.re(value)
+    return str(mp.nstr(value, _CERTIFICATE_DIGITS))
 
 
 def points(sweep: Any) -> tuple[dict[Symbol, Any], ...]:
@@ -192,4 +200,4 @@ def _reader(assumed: Mapping[str, str], variables: Sequence[str]) -> Any:
     return read
 
 
-__all__ = ["Card", "Certificate", "Record", "card", "certificate_of", "points", "where"]
+__all__ = ["Card", "Certificate", "Record", "card", "certificate_of", "letter", "points", "where"]

@@ -1,6 +1,7 @@
 """Pieces of HTML: formulas, certificate, derivation, one integral; needs no more than SymPy."""
 from __future__ import annotations
 
+import re
 from collections.abc import Sequence
 from html import escape
 from typing import Any
@@ -12,7 +13,8 @@ from ..derivation.document import Line, Paragraph, document
 from .card import Card, Certificate
 from .mathml import mathml, presentation
 
-_GREEK = {"Lambda": "Λ", "Delta": "Δ", "kappa(sigma)": "κ(σ)"}
+_SIGNS = {"Lambda": "Λ", "Delta": "Δ", "kappa": "κ", "sigma": "σ", "phi": "φ", "theta": "θ", "oo": "∞", "pi": "π"}
+_SIGN = re.compile(r"\b(" + "|".join(_SIGNS) + r")(?=\b|_)")
 
 
 def formula(value: Any, block: bool = False) -> str:
@@ -22,13 +24,18 @@ def formula(value: Any, block: bool = False) -> str:
     return f"<code>{escape(str(value))}</code>"
 
 
+def signs(text: str) -> str:
+    """Greek letters and infinity as such."""
+    return _SIGN.sub(lambda match: _SIGNS[match.group(1)], text)
+
+
 def lines(found: Sequence[Line]) -> str:
     """Labelled formulas, one below the other."""
     return "".join(_line(line) for line in found)
 
 
 def _line(line: Line) -> str:
-    label = escape(_GREEK.get(line.label, line.label)) or "="
+    label = escape(signs(line.label)) or "="
     value = formula(line.value)
     if line.label == "for" and isinstance(line.value, str):
         value = f"<span>{escape(line.value)}</span>"
@@ -42,7 +49,7 @@ def derivation(steps: Sequence[Paragraph], sources: Sequence[str], open_: bool =
     items = []
     for step in steps:
         theorem = f' <span class="theorem">{escape(step.theorem)}</span>' if step.theorem else ""
-        items.append(f"<li><p>{escape(step.action)}{theorem}</p>{lines(step.lines)}</li>")
+        items.append(f"<li><p>{escape(signs(step.action))}{theorem}</p>{lines(step.lines)}</li>")
     told = f'<p class="sources">Sources: {escape("; ".join(sources))}</p>' if sources else ""
     return (
         f"<details{' open' if open_ else ''}><summary>Derivation, {len(steps)} step{'s' * (len(steps) != 1)}</summary>"
@@ -57,8 +64,7 @@ def certificate(found: Certificate | None) -> str:
     mark = {True: "good", False: "bad", None: "open"}[found.ok]
     head = f'<p class="verdict {mark}">Quadrature: {found.verdict}</p>'
     rows = "".join(
-        f'<tr><td>{escape(at)}</td><td class="number">{escape(c)}</td><td class="number">{escape(q)}</td>'
-        f'<td class="number">{escape(d)}</td></tr>'
+        f'<tr><td>{escape(at)}</td>{_cell("closed form", c)}{_cell("quadrature", q)}{_cell("digits", d)}</tr>'
         for at, c, q, d in found.rows
     )
     outside = "".join(
@@ -71,6 +77,11 @@ def certificate(found: Certificate | None) -> str:
     )
     note = f'<p class="note">{escape(found.note)}</p>' if found.note else ""
     return f"<div class=certificate>{head}{table if rows or outside else ''}{note}</div>"
+
+
+def _cell(label: str, number: str) -> str:
+    """A number, with the head of its column for screens too narrow for columns."""
+    return f'<td class="number" data-label="{label}">{escape(number)}</td>'
 
 
 def equation(left: Any, right: Any) -> str:

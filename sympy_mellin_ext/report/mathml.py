@@ -1,6 +1,7 @@
 """Formulas as presentation MathML: SymPy's printer, with the special functions in their usual letters."""
 from __future__ import annotations
 
+import re
 from typing import Any
 
 from sympy import Basic, Expr, Integer, Mul, S, fraction
@@ -19,10 +20,14 @@ _NAMED = {
 }  # fmt: skip
 # Names that HTML knows and XML does not, and signs that read better.
 _ENTITIES = {
-    "&dd;": "d", "&ExponentialE;": "e", "&ImaginaryI;": "i", "&InvisibleTimes;": "&#x2062;", "&pi;": "&#960;",
+    "<mo>&dd;</mo>": '<mspace width="0.17em"/><mi mathvariant="normal">d</mi>',
+    "&ExponentialE;": "e", "&ImaginaryI;": "i", "&InvisibleTimes;": "&#x2062;", "&pi;": "&#960;",
     "&Infinity;": "&#8734;", "<mn>-": "<mn>&#8722;", "<mo>-</mo>": "<mo>&#8722;</mo>",
-    "<mi>True</mi>": "<mtext>true</mtext>", "<mo>></mo>": "<mo>&gt;</mo>", "&#8476;": "Re", "&#8465;": "Im",
+    "<mi>True</mi>": "<mtext>true</mtext>", "<mo>></mo>": "<mo>&gt;</mo>", "<mo><</mo>": "<mo>&lt;</mo>",
+    "&#8476;": "Re", "&#8465;": "Im",
 }  # fmt: skip
+
+_NAME_FOLLOWS = re.compile(r"<mo>&#x2062;</mo>(?=(?:<mrow>|<msup>)*<mi>[A-Za-z]{2,}<)")
 
 
 class Printer(MathMLPresentationPrinter):
@@ -41,7 +46,7 @@ class Printer(MathMLPresentationPrinter):
 
     def _call(self, head: Any, *groups: tuple[Expr, ...]) -> Any:
         """``head(a, b; c; d)`` with groups of arguments apart by semicolons."""
-        row = self._row(head, self._element("mo", "("))
+        row = self._row(self._l_paren())
         for i, group in enumerate(groups):
             if i:
                 row.appendChild(self._element("mo", ";"))
@@ -51,8 +56,14 @@ class Printer(MathMLPresentationPrinter):
                 row.appendChild(self._print(argument))
             if not group:
                 row.appendChild(self._element("mo", "–"))
-        row.appendChild(self._element("mo", ")"))
-        return row
+        row.appendChild(self._r_paren())
+        return self._row(head, row)
+
+    def _l_paren(self) -> Any:
+        return self._element("mo", "(", form="prefix", lspace="0em", rspace="0em")
+
+    def _r_paren(self) -> Any:
+        return self._element("mo", ")", form="postfix", lspace="0em", rspace="0em")
 
     def _print_Function(self, e: Any) -> Any:
         name = type(e).__name__
@@ -78,12 +89,12 @@ class Printer(MathMLPresentationPrinter):
         order, z = e.args
         psi: Any = self._element("mi", "ψ")
         if order != 0:
-            shown = self._row(self._element("mo", "("), self._print(order), self._element("mo", ")"))
+            shown = self._row(self._l_paren(), self._print(order), self._r_paren())
             psi = self._element("msup", psi, shown)
         return self._call(psi, (z,))
 
     def _print_RisingFactorial(self, e: Any) -> Any:
-        base = self._row(self._element("mo", "("), self._print(e.args[0]), self._element("mo", ")"))
+        base = self._row(self._l_paren(), self._print(e.args[0]), self._r_paren())
         return self._element("msub", base, self._print(e.args[1]))
 
     def _print_Tuple(self, e: Any) -> Any:
@@ -124,7 +135,7 @@ class Printer(MathMLPresentationPrinter):
         closed = base.is_Symbol or (base.is_Integer and base.is_nonnegative)
         body = self._print(base)
         if not closed:
-            body = self._row(self._element("mo", "("), body, self._element("mo", ")"))
+            body = self._row(self._l_paren(), body, self._r_paren())
         return self._element("msup", body, self._print(e.exp))
 
     def _print_Dummy(self, e: Any) -> Any:
@@ -132,17 +143,17 @@ class Printer(MathMLPresentationPrinter):
 
 
 def mathml(value: Any, block: bool = False) -> str:
-    """The formula as a ``math`` element.
+    """The formula as a ``math`` element, in a line of its own or in one with text.
 
     Examples
     --------
     >>> from sympy import Symbol
     >>> from sympy_mellin_ext.report.mathml import mathml
     >>> mathml(Symbol('x')/2)
-    '<math><mfrac><mi>x</mi><mn>2</mn></mfrac></math>'
+    '<math displaystyle="true"><mfrac><mi>x</mi><mn>2</mn></mfrac></math>'
     """
     text = presentation(value)
-    return f'<math display="block">{text}</math>' if block else f"<math>{text}</math>"
+    return f'<math display="block">{text}</math>' if block else f'<math displaystyle="true">{text}</math>'
 
 
 def presentation(value: Any) -> str:
@@ -150,7 +161,8 @@ def presentation(value: Any) -> str:
     text = Printer().doprint(value if isinstance(value, Basic) else Integer(value))
     for old, new in _ENTITIES.items():
         text = text.replace(old, new)
-    return text
+    # a thin space before the name of a function: a arsinh(x)
+    return _NAME_FOLLOWS.sub('<mo lspace="0.17em" rspace="0em">&#x2062;</mo>', text)
 
 
 __all__ = ["mathml", "presentation"]

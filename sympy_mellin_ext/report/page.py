@@ -49,6 +49,10 @@ details ol { padding-left: 1.3rem; margin: 0.3rem 0; } details li p { margin: 0.
 .theorem { color: var(--dim); font-size: 0.86rem; display: inline-block; } .theorem::before { content: "— "; }
 pre { overflow-x: auto; background: var(--panel); padding: 0.6rem; font-size: 0.8rem; border-radius: 0.4rem; }
 .summary { color: var(--dim); }
+@media screen and (max-width: 40rem) { thead { display: none; } table, tbody { display: block; }
+  tr { display: grid; grid-template-columns: 1fr; padding: 0.35rem 0; border-bottom: 1px solid var(--rule); }
+  td { border: 0; padding: 0.05rem 0; } td[data-label] { display: flex; gap: 0.6rem; }
+  td[data-label]::before { content: attr(data-label); color: var(--dim); min-width: 6.5rem; } }
 @media print { :root { --ink: #000; --dim: #444; --paper: #fff; --panel: #fff; --rule: #999; --good: #000; --bad: #000;
   --open: #000; --link: #000; } body { max-width: none; padding: 0; font-size: 10pt; } nav { display: none; }
   article { break-inside: auto; } h2, .display { break-after: avoid; } figure, tr { break-inside: avoid; }

@@ -18,7 +18,7 @@ from ..steps import Contour, Total
 from ..verify.numeric import NUMERIC_ERRORS, Undefined, Unevaluated, evaluate
 from ..verify.quadrature import quad
 from ..verify.sampling import sample
-from .card import points, where
+from .card import letter, points, where
 
 _LEFT, _RIGHT, _STRIP = "#c8641e", "#3a86c8", "#2f9e6e"
 _CURVES = ("#3a86c8", "#c8641e", "#2f9e6e", "#a05ab4", "#b08a1e")
@@ -262,11 +262,11 @@ def sweep_picture(answer: ClosedForm, sweep: Any, seconds: float = 5.0) -> Pictu
     below.set_ylim(1e-18, max([1e-10, *(10 * e for e in _errors(found))]))
     above.set_ylabel("absolute value" if turned else "value")
     below.set_ylabel("rel. error")
-    below.set_xlabel(str(v))
+    below.set_xlabel(letter(v))
     if any(groups) and len(groups) > 1:
         figure.legend(loc="outside upper center", ncols=3, frameon=False, fontsize=8)
     only = next(iter(groups)) if len(groups) == 1 else ""
-    over = f"{v}, {only}" if only else str(v)
+    over = f"{letter(v)}, {only}" if only else letter(v)
     caption = f"Closed form (line) and quadrature (dots) over {over}; below, the relative difference"
     left_out = len(groups) - len(_CURVES)
     if left_out > 0:
