@@ -9,6 +9,7 @@ from sympy_mellin_ext import closed_form, integrate, principal_value
 from sympy_mellin_ext.verify import verify
 from sympy_mellin_ext.verify.certify import holds_up
 from sympy_mellin_ext.verify.nested import quad_nested
+from sympy_mellin_ext.verify.sampling import sample
 
 x, y, a, b = symbols("x y a b", positive=True)
 s = Symbol("s", real=True)
@@ -44,6 +45,11 @@ def test_a_pole_inside_the_range_is_divergence():
     p = Symbol("p", real=True)
     record = verify(1 / (x + p), (x, 0, 1), sympy.log((1 + p) / p), p > 0, digits=8)
     assert record.ok is True and record.sharp is True, str(record)
+
+
+def test_points_far_from_the_origin_are_found():
+    n = Symbol("n", integer=True, positive=True)
+    assert len(sample([b], b > 5)) == len(sample([n], n > 6)) == 4
 
 
 def test_what_cannot_be_checked_outside_is_said():

@@ -17,14 +17,15 @@ _TRIES = 4000
 _DENOMINATORS = (3, 5, 7, 9, 11, 13)
 
 
-def draw(symbol: Symbol, source: random.Random, turned: bool) -> Expr:
+def draw(symbol: Symbol, source: random.Random, turned: bool, wide: int = 1) -> Expr:
     """A value that the assumptions of `symbol` allow; `turned` asks for an imaginary part if they do."""
     if symbol.is_integer:
-        low = 1 if symbol.is_positive else 0 if symbol.is_nonnegative else -5
-        high = -1 if symbol.is_negative else 0 if symbol.is_nonpositive else 5
+        low = 1 if symbol.is_positive else 0 if symbol.is_nonnegative else -5 * wide
+        high = -1 if symbol.is_negative else 0 if symbol.is_nonpositive else 5 * wide
         return Integer(source.randint(min(low, high), max(low, high)))
     denominator = source.choice(_DENOMINATORS)
     size = Rational(source.randint(1, 3 * denominator + 1) * denominator + 1, denominator**2)
+    size *= wide
     if symbol.is_positive or symbol.is_nonnegative:
         return size
     if symbol.is_negative or symbol.is_nonpositive:
@@ -71,9 +72,12 @@ def sample(symbols: Iterable[Symbol], condition: Any = True, given: Any = (), co
     inside = inside_test(region, names)
     source = random.Random("parameters " + " ".join(str(n) for n in names))
     accepted: list[Point] = []
+    wide = 1
     for number in range(_TRIES):
         turned = len(accepted) % 3 == 2 and number % 2 == 0
-        point = {name: draw(name, source, turned) for name in names}
+        if not accepted and number > _TRIES // 2:
+            wide = 4
+        point = {name: draw(name, source, turned, wide) for name in names}
         if inside(point):
             if point not in accepted:
                 accepted.append(point)
