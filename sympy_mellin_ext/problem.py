@@ -2,11 +2,15 @@
 from __future__ import annotations
 
 from dataclasses import dataclass, replace
-from typing import Any
+from functools import cached_property
+from typing import TYPE_CHECKING, Any, NamedTuple
 
 from sympy import Expr, S, Symbol, oo
 
 from .region import Facts
+
+if TYPE_CHECKING:
+    from .matching import Term
 
 REASONS = ("no kernel", "growth", "empty region", "diverges", "range", "too many kernels")
 
@@ -31,11 +35,19 @@ class Refusal(Exception):
         return type(self), (self.reason, self.detail)
 
 
+class Finding(NamedTuple):
+    """A reason that nobody has asked for yet: writing out an integrand takes longer than to refuse it."""
+
+    reason: str
+    detail: str
+    about: tuple[Any, ...] = ()
+
+
 class Diagnosis:
     """Collects the reasons of the strategies that refused; exists only when somebody asked."""
 
     def __init__(self) -> None:
-        self.findings: list[Refusal] = []
+        self.findings: list[Finding] = []
         self.divergent = False  # shown for the question as it was asked
         self.infinity: Expr | None = None  # oo or -oo, where it diverges to that
         self.proved: list[int] = []  # depths of the questions that were shown to diverge
@@ -45,7 +57,8 @@ class Diagnosis:
         for vague in (("no kernel", "too many kernels"), ("no kernel",), ()):
             ranked = [f for f in self.findings if f.reason not in vague]
             if ranked:
-                return ranked[0]
+                reason, detail, about = ranked[0]
+                return Refusal(reason, detail.format(*about) if about else detail)
         return Refusal("no kernel", "no strategy recognises the integrand")
 
 
@@ -85,10 +98,20 @@ class Problem:
         """Whether the range is (0, oo)."""
         return self.lower is S.Zero and self.upper is S.Infinity
 
-    def refuse(self, reason: str, detail: str) -> Any:
-        """Note why a strategy refuses; returns None so that it can be returned."""
+    @cached_property
+    def terms(self) -> list[Term] | None:
+        """The integrand as a sum of terms for x > 0, read once for all strategies (see `read_terms`)."""
+        from .matching import read_terms
+
+        return read_terms(self.integrand, self.variable, self.facts)
+
+    def refuse(self, reason: str, detail: str, *about: Any) -> Any:
+        """Note why a strategy refuses; returns None so that it can be returned.
+
+        With ``about``, the detail is a format string, filled in when somebody reads it.
+        """
         if self.diagnosis is not None:
-            self.diagnosis.findings.append(Refusal(reason, detail))
+            self.diagnosis.findings.append(Finding(reason, detail, about))
 
     def diverges(self, detail: str, infinity: Expr | None = None) -> Any:
         """Note that the integral is shown to diverge, for every value of the parameters (to oo or -oo)."""

@@ -59,7 +59,13 @@ def shortest_sum(total: Expr) -> Expr:
                 candidates.append(_conjugates_joined(factor(cancel(total))))
         else:
             candidates.append(factor_terms(joined, sign=True))
-    return _evaluated(min(candidates, key=count_ops))
+    return _evaluated(_shortest(candidates))
+
+
+def _shortest(candidates: list[Expr]) -> Expr:
+    """The first of the shortest; where all are equal, nothing need be measured."""
+    different = list(dict.fromkeys(candidates))
+    return different[0] if len(different) == 1 else min(different, key=count_ops)
 
 
 def _evaluated(expr: Expr) -> Expr:

@@ -107,6 +107,8 @@ def _gathered(parts: list[Any]) -> Any:
     size = total.count_ops()
     if size > 250 or not any(p.base.is_Add for p in total.atoms(Pow)):
         return total
+    if _nothing_to_gather(total):
+        return total
     top, bottom = fraction(cancel(together(total)))
     bottom = factor(bottom)
     radicals = _radicals(total)
@@ -116,6 +118,24 @@ def _gathered(parts: list[Any]) -> Any:
         if candidate.count_ops() <= size and _radicals(candidate) <= radicals:
             best, size = candidate, candidate.count_ops()
     return best
+
+
+def _nothing_to_gather(total: Any) -> bool:
+    """Whether there is only one sum in radicals, in one term beside numbers: fractions have nothing to share."""
+    terms = [t for t in Add.make_args(total) if not t.is_number]
+    if len(terms) != 1:
+        return False
+    sums = 0
+    for factor in Mul.make_args(terms[0]):
+        base, exponent = factor.as_base_exp()
+        if base.is_Add:
+            plain = all(a.is_Atom or (a.is_Pow and a.base.is_Symbol and a.exp.is_Integer) for a in base.args)
+            if not plain or exponent.is_Integer:
+                return False
+            sums += 1
+        elif not base.is_Atom:
+            return False
+    return sums == 1
 
 
 def _radicals(expr: Any) -> set[Any]:

@@ -113,10 +113,10 @@ def _solved(tower: Tower, rows: list, step: int, pivots: list[int], theta: Symbo
     positions = _positions(rows, step)
     chosen = [[tower.K(c) for c in exact(positions[p])] for p in pivots]
     size = len(chosen[0])
-    null = DomainMatrix(chosen, (len(chosen), size), domain).nullspace().to_Matrix().tolist()
+    null = DomainMatrix(chosen, (len(chosen), size), domain).nullspace().to_list()
     if len(null) != 1:
         return None
-    vector = [tower.K.from_expr(v) for v in null[0]]
+    vector = [tower.K(v) for v in null[0]]
     for number, position in enumerate(positions):
         if number not in pivots:
             total = tower.K.zero

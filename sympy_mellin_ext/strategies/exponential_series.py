@@ -47,7 +47,7 @@ class ExponentialSeries:
 
         drafts = SeriesReader(problem.variable, problem.facts).read(problem.integrand)
         if drafts is None:
-            return problem.refuse("no kernel", f"{problem.integrand} is not a series of exponentials")
+            return problem.refuse("no kernel", "{} is not a series of exponentials", problem.integrand)
         try:
             expansions = [expand(d, problem.facts) for d in drafts if d.series]
             answer = _sum_of_parts(problem, expansions, [d for d in drafts if not d.series], self.name)

@@ -17,7 +17,7 @@ from sympy.logic.boolalg import Boolean
 from ..closed_form import ClosedForm, Step
 from ..dirichlet import NoClosedForm
 from ..gamma.shortest import positive_power
-from ..matching import Term, read_terms
+from ..matching import Term
 from ..pieces import Piece
 from ..problem import Problem
 from ..region import Region, real_part
@@ -36,10 +36,10 @@ class MasterTheorem:
 
     def attempt(self, problem: Problem) -> ClosedForm | None:
         if not problem.half_line:
-            return problem.refuse("range", f"({problem.lower}, {problem.upper}) is not the half line")
-        terms = read_terms(problem.integrand, problem.variable, problem.facts)
+            return problem.refuse("range", "({}, {}) is not the half line", problem.lower, problem.upper)
+        terms = problem.terms
         if terms is None:
-            return problem.refuse("no kernel", f"a factor of {problem.integrand} is not in the table")
+            return problem.refuse("no kernel", "a factor of {} is not in the table", problem.integrand)
         if not terms:
             return ClosedForm(S.Zero, strategy=self.name)
         if any(len(t.kernels) > 1 for t in terms):

@@ -20,7 +20,7 @@ from sympy.logic.boolalg import Boolean
 
 from ..behaviour import Convergence, converge_product
 from ..closed_form import ClosedForm, Step
-from ..matching import Term, read_terms
+from ..matching import Term
 from ..pieces import Piece
 from ..problem import Problem
 from ..region import Facts, Region, real_part
@@ -46,7 +46,7 @@ class MellinBarnes:
     def attempt(self, problem: Problem) -> ClosedForm | None:
         if not problem.half_line:
             return None
-        terms = read_terms(problem.integrand, problem.variable, problem.facts)
+        terms = problem.terms
         if terms is None or all(len(t.kernels) < 2 for t in terms):
             return None
         if any(len(t.kernels) > 2 and weber(t, problem.facts) is None for t in terms):

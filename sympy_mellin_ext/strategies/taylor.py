@@ -124,13 +124,19 @@ def split_front(integrand: Expr, x: Symbol) -> tuple[Expr, Expr, int, Expr]:
         single = monomial(factor, x)
         if single is not None:
             coefficient, power = coefficient * single[0], power + single[1]
-        elif factor == log(x):
+        elif type(factor) is log and factor.args[0] == x:
             logs += 1
-        elif factor.is_Pow and factor.base == log(x) and factor.exp.is_Integer and factor.exp.is_positive:
+        elif _is_log_power(factor, x):
             logs += int(factor.exp)
         else:
             rest.append(factor)
     return coefficient, power, logs, Mul(*rest)
+
+
+def _is_log_power(factor: Expr, x: Symbol) -> bool:
+    if not factor.is_Pow or not factor.exp.is_Integer or factor.exp < 0:
+        return False
+    return type(factor.base) is log and bool(factor.base.args[0] == x)
 
 
 STRATEGIES = (ZetaCoefficients(), TaylorSeries("Taylor coefficients of one argument", True))

@@ -49,7 +49,7 @@ class Ranges:
     def _forward(problem: Problem) -> ClosedForm | None:
         for end in (problem.lower, problem.upper):
             if not end.is_extended_real:
-                return problem.refuse("range", f"the end {end} is not known to be real")
+                return problem.refuse("range", "the end {} is not known to be real", end)
         found = finite.ordered(problem)
         if found is None:
             return problem.refuse("range", "which end is the lower one is not known")

@@ -44,7 +44,7 @@ def solve_unit(problem: Problem, integrand: Expr, x: Symbol) -> ClosedForm | Non
     for fractions in (False, True):
         drafts = UnitReader(x, problem.facts, fractions).read(integrand)
         if drafts is None:
-            return problem.refuse("no kernel", f"a factor of {integrand} is not in the table on (0, 1)")
+            return problem.refuse("no kernel", "a factor of {} is not in the table on (0, 1)", integrand)
         sorted_terms = [_sorted(draft, problem.facts) for draft in drafts]
         if all(terms is not None for terms in sorted_terms):
             return _sum(problem, [t for terms in sorted_terms if terms is not None for t in terms])
@@ -105,7 +105,7 @@ def _sum(problem: Problem, terms: Sequence[UnitTerm]) -> ClosedForm | None:
         value, conditions, positive, removable = found_joint
         region = region.holds(*conditions).positive(*positive)
         values.append(tidy(value))
-        if removable is not None:
+        if removable is not None and removable[0] is not S.false:
             special.setdefault(removable[0], []).append((values[-1], removable[1]))
     total = Add(*values)
     if total.has(*BAD):
