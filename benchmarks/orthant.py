@@ -24,7 +24,7 @@ def _child(entry: Entry, seconds: float, ours: bool, pipe: Connection) -> None:
 
     answer, spent, outcome, _ = timed(integrate if ours else sympy.integrate, entry, seconds)
     if not outcome:
-        with time_limit(120):
+        with time_limit(30):
             outcome = classify(answer, entry)[0]
     pipe.send((outcome, spent))
 
@@ -37,7 +37,7 @@ def measured(entry: Entry, seconds: float, ours: bool) -> tuple[str, float]:
     process.start()
     sender.close()
     try:
-        result: tuple[str, float] = receiver.recv() if receiver.poll(seconds + 130) else (TIMEOUT, seconds)
+        result: tuple[str, float] = receiver.recv() if receiver.poll(seconds + 40) else (TIMEOUT, seconds)
     except EOFError:
         result = ("error", seconds)
     process.kill()

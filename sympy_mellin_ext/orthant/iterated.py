@@ -38,7 +38,8 @@ def iterated(f: Expr, limits: Limits, facts: Facts) -> ClosedForm | None:
     >>> iterated(x**(a - 1)*(y - x)**(b - 1)*exp(-y), [(x, 0, y), (y, 0, oo)], Facts()).value
     gamma(a)*gamma(b)
     """
-    names = {x: _name(x, lower, upper) for x, lower, upper in limits}
+    limits = [(x, S(lower), S(upper)) for x, lower, upper in limits]
+    names = {x: _name(x, lower) for x, lower, _ in limits}
     f = f.xreplace(names)
     ranges = [(names[x], a.xreplace(names), b.xreplace(names)) for x, a, b in limits]
     if f.is_polynomial(*names.values()) or not nonnegative(f, Facts((*facts.given, *_relations(ranges)))):
@@ -50,7 +51,7 @@ def iterated(f: Expr, limits: Limits, facts: Facts) -> ClosedForm | None:
     return None
 
 
-def _name(x: Symbol, lower: Expr, upper: Expr) -> Dummy:
+def _name(x: Symbol, lower: Expr) -> Dummy:
     return Dummy(x.name, positive=True) if lower.is_nonnegative else Dummy(x.name, real=True)
 
 
