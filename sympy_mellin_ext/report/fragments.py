@@ -35,11 +35,11 @@ def lines(found: Sequence[Line]) -> str:
 
 
 def _line(line: Line) -> str:
-    label = escape(signs(line.label)) or "="
+    label = f"{escape(signs(line.label))}:" if line.label else "="
     value = formula(line.value)
     if line.label == "for" and isinstance(line.value, str):
         value = f"<span>{escape(line.value)}</span>"
-    return f'<div class="line"><span class="label">{label}</span><span class="formula">{value}</span></div>'
+    return f'<div class="line"><span class="label">{label}</span> <span class="formula">{value}</span></div>'
 
 
 def derivation(steps: Sequence[Paragraph], sources: Sequence[str], open_: bool = False) -> str:
@@ -48,7 +48,7 @@ def derivation(steps: Sequence[Paragraph], sources: Sequence[str], open_: bool =
         return ""
     items = []
     for step in steps:
-        theorem = f' <span class="theorem">{escape(step.theorem)}</span>' if step.theorem else ""
+        theorem = f' <span class="theorem">— {escape(step.theorem)}</span>' if step.theorem else ""
         items.append(f"<li><p>{escape(signs(step.action))}{theorem}</p>{lines(step.lines)}</li>")
     told = f'<p class="sources">Sources: {escape("; ".join(sources))}</p>' if sources else ""
     return (

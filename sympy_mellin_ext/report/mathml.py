@@ -57,7 +57,19 @@ class Printer(MathMLPresentationPrinter):
             if not group:
                 row.appendChild(self._element("mo", "–"))
         row.appendChild(self._r_paren())
-        return self._row(head, row)
+        return self._row(head, self._settled(row))
+
+    def _settled(self, row: Any) -> Any:
+        """Parentheses around something low keep their size (fonts put room around those that may grow)."""
+        if not any(row.getElementsByTagName(tag) for tag in ("mfrac", "msup", "msqrt", "mroot", "mtable", "msubsup")):
+            for mark in (row.firstChild, row.lastChild):
+                mark.setAttribute("stretchy", "false")
+        return row
+
+    def parenthesize(self, item: Any, level: int, strict: bool = False) -> Any:
+        row = super().parenthesize(item, level, strict)
+        marked = row.firstChild is not None and row.firstChild.nodeName == "mo" and row.firstChild.hasAttribute("form")
+        return self._settled(row) if marked and row.lastChild.nodeName == "mo" else row
 
     def _l_paren(self) -> Any:
         return self._element("mo", "(", form="prefix", lspace="0em", rspace="0em")
@@ -135,7 +147,7 @@ class Printer(MathMLPresentationPrinter):
         closed = base.is_Symbol or (base.is_Integer and base.is_nonnegative)
         body = self._print(base)
         if not closed:
-            body = self._row(self._l_paren(), body, self._r_paren())
+            body = self._settled(self._row(self._l_paren(), body, self._r_paren()))
         return self._element("msup", body, self._print(e.exp))
 
     def _print_Dummy(self, e: Any) -> Any:

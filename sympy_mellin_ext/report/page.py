@@ -46,7 +46,7 @@ th { color: var(--dim); font-weight: 500; }
 figure { margin: 1rem 0; } figure svg { width: 100%; max-width: 36rem; height: auto; display: block; }
 details { margin: 0.5rem 0; } summary { cursor: pointer; color: var(--link); padding: 0.3rem 0; }
 details ol { padding-left: 1.3rem; margin: 0.3rem 0; } details li p { margin: 0.6rem 0 0.2rem; }
-.theorem { color: var(--dim); font-size: 0.86rem; display: inline-block; } .theorem::before { content: "— "; }
+.theorem { color: var(--dim); font-size: 0.86rem; display: inline-block; }
 pre { overflow-x: auto; background: var(--panel); padding: 0.6rem; font-size: 0.8rem; border-radius: 0.4rem; }
 .summary { color: var(--dim); }
 @media screen and (max-width: 40rem) { thead { display: none; } table, tbody { display: block; }

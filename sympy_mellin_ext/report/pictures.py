@@ -155,7 +155,8 @@ def pole_picture(answer: ClosedForm, point: Mapping[Symbol, Any] | None = None) 
     axes.set_ylim(-height, height)
     axes.set_xlabel(f"Re {found.variable}")
     axes.set_ylabel(f"Im {found.variable}")
-    figure.legend(loc="outside upper center", ncols=4, frameon=False, fontsize=8, handletextpad=0.3, columnspacing=1.0)
+    figure.legend(loc="outside upper center", ncols=5, frameon=False, fontsize=7.5, handletextpad=0.2,
+                  columnspacing=0.8)  # fmt: skip
     what = "the transform" if found.variable == "s" else "the integrand of the contour integral"
     caption = f"Poles and strip of {what} for {where(found.point)}"
     return Picture(_svg(figure, caption), caption)
