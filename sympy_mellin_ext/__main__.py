@@ -54,7 +54,8 @@ def parser() -> argparse.ArgumentParser:
     )  # fmt: skip
     commands = top.add_subparsers(dest="command", required=True, metavar="evaluate | batch")
     limits = argparse.ArgumentParser(add_help=False)
-    limits.add_argument("--seconds", type=_positive, default=60.0, metavar="S", help="time limit an integral (default 60)")
+    limits.add_argument("--seconds", type=_positive, default=60.0, metavar="S",
+                        help="time limit an integral (default 60)")
     limits.add_argument("--memory", type=_whole, default=2048, metavar="MIB",
                         help="memory limit an integral in MiB (default 2048)")
     limits.add_argument("--no-check", dest="check", action="store_false", help="do not compare with quadrature")
@@ -75,8 +76,8 @@ def parser() -> argparse.ArgumentParser:
     one.add_argument("--digits", type=_whole, default=12, metavar="N", help="digits of the check (default 12)")
     one.add_argument("--format", choices=("text", "latex", "json", "python"), default="text")
 
-    many = commands.add_parser("batch", parents=[limits], help="a list of integrals", formatter_class=raw, epilog=_BATCH,
-                               description="Evaluate a list of integrals in worker processes.")
+    many = commands.add_parser("batch", parents=[limits], help="a list of integrals", formatter_class=raw,
+                               epilog=_BATCH, description="Evaluate a list of integrals in worker processes.")
     many.add_argument("file", metavar="FILE", help="a list of integrals in TOML")
     many.add_argument("--journal", metavar="JOURNAL",
                       help="where records are kept (default: journal.jsonl in the folder of --out, else none)")
@@ -145,8 +146,8 @@ def _evaluate(options: argparse.Namespace) -> int:
     from .batch.reader import entry_from_table
 
     table: dict[str, Any] = {
-        "name": "integral", "integrand": options.expression.lstrip(), "variable": options.variable, "lower": options.lower,
-        "upper": options.upper, "given": options.given, "digits": options.digits, "assume": {},
+        "name": "integral", "integrand": options.expression.lstrip(), "variable": options.variable,
+        "lower": options.lower, "upper": options.upper, "given": options.given, "digits": options.digits, "assume": {},
     }  # fmt: skip
     if options.expected is not None:
         table["expected"] = options.expected
@@ -165,7 +166,7 @@ def _evaluate(options: argparse.Namespace) -> int:
 
 
 def _shown(entry: Entry, record: Record, form: str) -> str:
-    from .batch.outputs import formula, read_back, verdict
+    from .batch.outputs import counted, formula, read_back, verdict
     from .batch.source import MODULE_HEAD, function_source
 
     if form == "json":
@@ -183,9 +184,9 @@ def _shown(entry: Entry, record: Record, form: str) -> str:
         region = record["condition"]
         lines.append(("region", "everywhere under the assumptions" if region == "True" else region))
         certificate = record.get("certificate", {})
-        points = len(certificate.get("points", []))
         if certificate:
-            lines.append(("certificate", f"quadrature {verdict(record)} at {points} points {certificate['note']}".strip()))
+            points = counted(len(certificate["points"]))
+            lines.append(("certificate", f"quadrature {verdict(record)} at {points} {certificate['note']}".strip()))
         if "expected" in record:
             said = {True: "agrees", False: "DISAGREES", None: "could not be compared"}[record["expected"]["ok"]]
             lines.append(("expected", f"{said} {record['expected']['note']}".strip()))

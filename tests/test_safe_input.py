@@ -208,8 +208,8 @@ def _hostile(source: random.Random) -> str:
         return "".join(chr(source.choice((source.randrange(32, 127), source.randrange(0x2FFF)))) for _ in range(20))
     if kind == 1:
         return "".join(source.choices(string.printable, k=source.randrange(1, 40)))
-    words = ["x", "a", "(", ")", "**", "9", "1/2", "-", "~", "exp", ",", "I", "oo", "[", "]", "=", "<", "&", "for ", "if ",
-             ".", "not ", "lambda ", "gamma(", "1e9", "Piecewise(", "hyper(", "_", "\n", "|", " "]  # fmt: skip
+    words = ["x", "a", "(", ")", "**", "9", "1/2", "-", "~", "exp", ",", "I", "oo", "[", "]", "=", "<", "&", "for ",
+             "if ", ".", "not ", "lambda ", "gamma(", "1e9", "Piecewise(", "hyper(", "_", "\n", "|", " "]  # fmt: skip
     if kind <= 3:
         return "".join(source.choices(words, k=source.randrange(1, 25)))
     if kind <= 5:
@@ -218,8 +218,9 @@ def _hostile(source: random.Random) -> str:
         place, cut = source.randrange(len(good)), source.randrange(4)
         return good[:place] + source.choice(words) + good[place + cut:]
     name = source.choice([*FUNCTIONS, "open", "eval", "__import__", "getattr", "globals", "print", "type", "Symbol"])
-    attack = source.choice(["{0}({1})", "{0}({0}({0}({1})))", "{0}({1}, {1})", "{1}.{0}", "{0}.__class__({1})", "{1}**{0}",
-                            "({1})**({1})**({1})", "[{0} for {0} in {1}]", "{0}({1}" + "({1}" * 9, "{0}(" * 15 + "{1}"])  # fmt: skip
+    attack = source.choice(["{0}({1})", "{0}({0}({0}({1})))", "{0}({1}, {1})", "{1}.{0}", "{0}.__class__({1})",
+                            "{1}**{0}", "({1})**({1})**({1})", "[{0} for {0} in {1}]", "{0}({1}" + "({1}" * 9,
+                            "{0}(" * 15 + "{1}"])  # fmt: skip
     return attack.format(name, source.choice(["9**9", "x", "-1", "10**9", "os", "1e60", "1/0", "a" * 50, "0", "I*9"]))
 
 
@@ -231,10 +232,11 @@ def test_fuzz() -> None:
     def hook(event: str, arguments: tuple) -> None:
         if not watched or event in ("compile", "object.__getattr__", "sys._getframe", "builtins.id"):
             return
-        # the host imports parts of itself when they are first needed, and writes loops over exponents as code
+        # two places below us write loops over whole numbers as code: products of monomials, hypergeometric sums
         frame = sys._getframe(1)
-        if event == "exec" and any(f and "sympy" in f.f_code.co_filename for f in (frame, frame.f_back)):
+        if event == "exec" and frame.f_code.co_name in ("_build", "make_hyp_summator", "exec_"):
             return
+        # the host imports parts of itself when they are first needed
         if event in ("import", "open", "exec", "marshal.loads") and "sympy" in repr(arguments)[:500]:
             return
         events.append(f"{event} {arguments!r}"[:200])

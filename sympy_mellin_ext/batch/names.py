@@ -73,10 +73,11 @@ FUNCTIONS = _rows()
 # arguments with brackets of their own
 STRUCTURED = ("hyper", "meijerg", "Piecewise", "Sum")
 
-# The host builds these quickly whatever stands inside; others, functions of functions, can take it exponentially long.
-LIGHT = (
-    "exp log ln sqrt cbrt abs Abs sin cos tan asin acos atan gamma loggamma erf erfc Min Max Rational factorial"
-).split()
+# Built quickly whatever stands inside; functions of functions of others can take the host exponentially long.
+LIGHT = frozenset((
+    "exp", "log", "ln", "sqrt", "cbrt", "abs", "Abs", "sin", "cos", "tan", "asin", "acos", "atan", "gamma",
+    "loggamma", "erf", "erfc", "Min", "Max", "Rational", "factorial",
+))  # fmt: skip
 
 RELATIONS: dict[str, Callable[..., Any]] = {
     "Eq": sympy.Eq, "Ne": sympy.Ne, "Gt": sympy.Gt, "Ge": sympy.Ge, "Lt": sympy.Lt, "Le": sympy.Le,

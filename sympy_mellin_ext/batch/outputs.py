@@ -4,9 +4,9 @@ from __future__ import annotations
 import csv
 import os
 import re
-import sys
 from collections import Counter
 from collections.abc import Mapping, Sequence
+from importlib import import_module
 from importlib.util import find_spec
 from keyword import iskeyword
 from pathlib import Path
@@ -31,6 +31,11 @@ def succeeded(record: Mapping[str, Any]) -> bool:
         and record.get("certificate", {}).get("ok") is not False
         and record.get("expected", {}).get("ok") is not False
     )
+
+
+def counted(count: int) -> str:
+    """``1 point``, ``4 points``."""
+    return f"{count} point{'s' * (count != 1)}"
 
 
 def verdict(record: Mapping[str, Any]) -> str:
@@ -77,6 +82,8 @@ def summary(records: Sequence[Record], total: int, width: int = 100, colour: boo
 
 def _result(record: Mapping[str, Any]) -> str:
     value = record["value"] or ""
+    if value and record["status"] not in ("solved", "stock", "error"):
+        return f"diverges to {value}"
     return value if record["condition"] in (None, "True") else f"{value}  for {record['condition']}"
 
 
@@ -104,8 +111,8 @@ def formula(entry: Entry, record: Mapping[str, Any]) -> str:
     integral = latex(Integral(entry.integrand, *entry.limits))
     found = read_back(entry, record)
     if found is None:
-        text = record["value"] or record["reason"] or record["status"]
-        return rf"{integral} : \quad \texttt{{{_escaped(text)}}}"
+        text = record["reason"] or record["value"] or record["status"]
+        return rf"{integral} : \quad \text{{{_escaped(text)}}}"
     value, condition, special = found
     where = "" if condition is S.true else rf",\qquad {latex(condition)}"
     more = "".join(rf",\quad {latex(v)} \text{{ at }} {latex(c)}" for c, v in special)
@@ -192,11 +199,8 @@ def write_all(pairs: Sequence[Pair], title: str, folder: Path) -> list[Path]:
     written += write_sweeps(pairs, folder / "sweeps")
     package = __name__.split(".")[0]
     if find_spec(f"{package}.report") is not None:
-        try:
-            from importlib import import_module
-
-            import_module(f"{package}.report").write_report([record for _, record in pairs], folder / "report.html")
-            written.append(folder / "report.html")
-        except ImportError as missing:
-            print(f"no report.html: {missing}; the extra 'report' installs what it needs", file=sys.stderr)
+        pictures = find_spec("matplotlib") is not None  # the extra 'report'
+        report = import_module(f"{package}.report")
+        report.write_report([record for _, record in pairs], folder / "report.html", title=title, pictures=pictures)
+        written.append(folder / "report.html")
     return written

@@ -148,7 +148,8 @@ def _row(entry: Entry, whole: Expr, point: Mapping[Symbol, Expr]) -> list[Any]:
     """Parameter values, then the value (None outside the region), then the expected one if there is any."""
     row: list[Any] = [{k.name: _shown(v, entry.digits) for k, v in point.items()}, _value(whole, point, entry.digits)]
     if entry.expected is not None:
-        row.append(_value(entry.expected, point, entry.digits))
+        number = _expected(entry.expected, point, entry.digits)
+        row.append(None if number is None else mp.nstr(number, entry.digits))
     return row
 
 
@@ -171,12 +172,18 @@ def _number(expr: Expr, point: Mapping[Symbol, Expr], digits: int) -> Any:
         return None
 
 
+def _expected(expr: Expr, point: Mapping[Symbol, Expr], digits: int) -> Any:
+    """The same for a formula of the user's; where it reads 0*oo, rounding would give it some value."""
+    exact = expr.xreplace(dict(point))
+    return None if exact.has(nan, zoo, oo) else _number(expr, point, digits)
+
+
 def _compared(entry: Entry, whole: Expr, points: Sequence[Mapping[Symbol, Expr]]) -> Record:
     """Whether the expected formula has our values: at how many points, and where not."""
     assert entry.expected is not None
     compared, differs = 0, []
     for point in points:
-        ours, theirs = _number(whole, point, entry.digits), _number(entry.expected, point, entry.digits)
+        ours, theirs = _number(whole, point, entry.digits), _expected(entry.expected, point, entry.digits)
         if ours is None or theirs is None:
             continue
         compared += 1

@@ -5,12 +5,8 @@ import sys
 
 from ..batch import Entry, Options, read_list, stream
 from ..batch.journal import Record
-from ..batch.outputs import succeeded, verdict
+from ..batch.outputs import counted, succeeded, verdict
 from . import BUOYS
-
-
-def _points(count: int) -> str:
-    return f"{count} point{'s' * (count != 1)}"
 
 
 def show(number: int, entry: Entry, record: Record) -> None:
@@ -26,11 +22,12 @@ def show(number: int, entry: Entry, record: Record) -> None:
         region = record["condition"]
         lines.append(("region", "everywhere under the assumptions" if region == "True" else region))
         certificate = record["certificate"]
-        lines.append(("quadrature", f"{verdict(record)} at {_points(len(certificate['points']))} {certificate['note']}"))
+        points = counted(len(certificate["points"]))
+        lines.append(("quadrature", f"{verdict(record)} at {points} {certificate['note']}"))
     if "expected" in record:
         expected = record["expected"]
         said = {True: "agrees with", False: "DISAGREES with", None: "could not be compared with"}[expected["ok"]]
-        lines.append(("handbook", f"{said} {expected['formula']} at {_points(expected['points'])} {expected['note']}"))
+        lines.append(("handbook", f"{said} {expected['formula']} at {counted(expected['points'])} {expected['note']}"))
     lines.append(("time", f"{1000 * record['seconds']:.1f} ms, {record.get('strategy') or 'SymPy alone'}"))
     for head, text in lines:
         print(f"    {head:12} {text}".rstrip())
