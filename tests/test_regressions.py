@@ -64,3 +64,9 @@ def test_symbols_of_one_name():
     other = Symbol("nu", positive=True)
     record = verify(exp(-(nu**2 + other) * x), (x, 0, oo), 1 / (nu**2 + other), digits=8)
     assert record.ok is True, str(record)
+
+
+def test_an_odd_integrand_over_the_whole_line():
+    """Seed 70299: both halves are large, their total is zero."""
+    t = Symbol("t", real=True)
+    assert verify(t**3 * exp(2 * t) / (exp(t) + 1) ** 4, (t, -oo, oo), 0, digits=6).ok is True

@@ -202,8 +202,10 @@ def _interval(g: Integrand, low: Expr, high: Expr, values: dict[Symbol, Any], se
         return Piece(-piece.value, piece.error, piece.trouble)
     if low == -oo and high == oo:
         y = Symbol("y", positive=True)
-        return (_half_line(g.derived(g.expr.subs(x, y), y), setting)
-                + _half_line(g.derived(g.expr.subs(x, -y), y), setting))
+        halves = g.derived(g.expr.subs(x, y), y), g.derived(g.expr.subs(x, -y), y)
+        right, left = (_half_line(half, setting) for half in halves)
+        g.size = max(half.size for half in halves)  # what a total of zero is measured by
+        return right + left
     if low == -oo:
         y = Symbol("y", real=True)
         g = Integrand(g.expr.subs(x, -y), y, values, g.deadline)
