@@ -4,6 +4,7 @@ from __future__ import annotations
 import ast
 import inspect
 import random
+from cmath import isfinite
 from itertools import pairwise
 from types import ModuleType
 from typing import Any
@@ -115,15 +116,15 @@ def _value(symbol: Symbol, draw: random.Random) -> Expr:
 def _at(side: Basic, point: dict[Symbol, Expr]) -> Any:
     """The number, the truth value or the set at a point; None where there is none, or where nothing is claimed."""
     try:
+        if isinstance(side, Tuple):
+            values = [c for c in side if isinstance(c, Expr)][:1]
+            claims = [c for c in side if c not in values]
+            if not all(_claimed(c.subs(point, simultaneous=True), point[_S]) for c in claims):
+                return None
+            return _at(values[0], point) if values else True
         there = side.subs(point, simultaneous=True)
         if there.has(Integral):
             return None
-        if isinstance(there, Tuple):
-            values = [c for c in there if isinstance(c, Expr)][:1]
-            claims = [c for c in there if c not in values]
-            if not all(_claimed(c, point[_S]) for c in claims):
-                return None
-            return _at(values[0], {}) if values else True
         if isinstance(there, Boolean):
             return bool(there) if there in (S.true, S.false) else None
         while isinstance(there, (Complement, Intersection)):
@@ -131,7 +132,8 @@ def _at(side: Basic, point: dict[Symbol, Expr]) -> Any:
         if isinstance(there, FiniteSet):
             # SymPy evaluates the inverse of erf, not of erfc
             return frozenset(complex(v.rewrite(erfinv).evalf(20)) for v in there)
-        return complex(there.evalf(20)) if isinstance(there, Expr) else None
+        number = complex(there.evalf(20)) if isinstance(there, Expr) else None
+        return number if number is not None and isfinite(number) else None
     except (ArithmeticError, TypeError, ValueError):
         return None
 
