@@ -2,6 +2,7 @@
 from __future__ import annotations
 
 import csv
+import errno
 import importlib.util
 import json
 import os
@@ -121,7 +122,7 @@ HEAD = "[[integral]]\nname='one'\nintegrand='x'\n"
         (HEAD + "csv='none.csv'", "cannot be read"),
         (HEAD + "[[integral]]\nname='one'\nintegrand='x'", "line 5.*has this name"),
     ],
-)  # fmt: skip
+)
 def test_faults_name_file_line_entry_and_position(tmp_path: Path, text: str, message: str) -> None:
     with pytest.raises(ListError, match=message) as caught:
         read_list(write(tmp_path, text))
@@ -203,7 +204,7 @@ def test_problems_of_every_kind_and_what_their_records_say() -> None:
          "sweep": {"s": ["1/2", -1]}},
         {"integrand": "x*exp(-a*x)", "assume": {"a": "positive"}, "expected": "1/a"},
         {"integrand": "exp(x)", "upper": 1},
-    ]  # fmt: skip
+    ]
     records = evaluate_many(problems, jobs=1)
     needed = {"name", "key", "status", "value", "condition", "seconds", "reason"}
     assert all(needed <= set(r) for r in records)
@@ -270,7 +271,6 @@ def test_closing_early_ends_the_workers() -> None:
     assert not [t for t in threading.enumerate() if "ThreadPool" in t.name and t.is_alive()]
 
 
-@pytest.mark.skipif(not importlib.util.find_spec("distributed"), reason="needs the extra cluster")
 def test_dask_cluster_that_loses_a_worker(tmp_path: Path) -> None:
     from distributed import Client, LocalCluster
 
@@ -281,7 +281,7 @@ def test_dask_cluster_that_loses_a_worker(tmp_path: Path) -> None:
                      silence_logs=50) as cluster,
         Client(cluster) as client,
         Journal(journal) as book,
-    ):  # fmt: skip
+    ):
         pids = list(client.run(os.getpid).values())
         assert len(set(pids)) == 2
         names = []
@@ -300,7 +300,7 @@ def test_dask_cluster_that_loses_a_worker(tmp_path: Path) -> None:
 
 def record(name: str, key: str = "k", status: str = "solved") -> dict[str, Any]:
     return {"name": name, "key": key, "status": status, "value": "1", "condition": "True", "seconds": 0.1,
-            "reason": ""}  # fmt: skip
+            "reason": ""}
 
 
 def names_in(path: Path) -> list[str]:
@@ -366,13 +366,25 @@ def test_retry_drops_records_of_a_status(tmp_path: Path) -> None:
     assert list(tmp_path.iterdir()) == [path]
 
 
-@pytest.mark.skipif(not os.path.exists("/dev/full"), reason="needs a device that is full")
-def test_full_disk_is_told_and_the_record_is_still_shown() -> None:
-    shown = []
-    with Journal("/dev/full") as book, pytest.raises(JournalError, match=r"No space left.*run the same command again"):
-        for name, _ in stream(moments(2), QUICK, jobs=1, journal=book):
+@pytest.mark.parametrize("short", [True, False])
+def test_full_disk_is_told_and_the_record_is_still_shown(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch, short: bool
+) -> None:
+    path, shown, real = tmp_path / "journal.jsonl", [], os.write
+
+    def full(fd: int, data: bytes) -> int:
+        if not data.startswith(b'{"name": "moment 1"'):
+            return real(fd, data)
+        if short:
+            return real(fd, data[:30])
+        raise OSError(errno.ENOSPC, os.strerror(errno.ENOSPC))
+
+    monkeypatch.setattr(os, "write", full)
+    with Journal(path) as book, pytest.raises(JournalError, match=r"(?i)no space left.*run the same command again"):
+        for name, _ in stream(moments(3), QUICK, jobs=1, journal=book):
             shown.append(name)
-    assert len(shown) == 1
+    assert shown == ["moment 0", "moment 1"]
+    assert names_in(path) == ["moment 0"]
 
 
 def test_edited_entry_is_computed_again_and_others_are_not(tmp_path: Path) -> None:
@@ -417,7 +429,7 @@ def test_outputs(tmp_path: Path) -> None:
          "sweep": {"s": [1, "3/2", 3]}, "expected": "pi*(1 - 2**(s - 1))/sin(pi*s)", "note": "50 % & more_"},
         {"name": "2nd kind", "integrand": "exp(-a*x)*besselk(0, x)", "assume": {"a": "positive"}},
         {"name": "lambda", "integrand": "exp(-x)/x"},
-    ]  # fmt: skip
+    ]
     entries = [entry_from_table(table) for table in tables]
     pairs = list(zip(entries, evaluate_many(entries, jobs=2, check=False), strict=True))
     assert identifiers(["a b", "a-b", "lambda", "2nd"]) == ["a_b", "a_b_2", "integral_lambda", "integral_2nd"]

@@ -183,7 +183,7 @@ def test_symbols() -> None:
     for name, kind, message in [
         ("pi", "real", "constant"), ("lambda", "real", "word of Python"), ("__a", "real", "underscores"),
         ("a b", "real", "not a name"), ("a", "positiv", "did you mean positive?"), ("ﬁ", "real", "not a name"),
-    ]:  # fmt: skip
+    ]:
         with pytest.raises(InputError, match=message):
             read_symbol(name, kind)
 
@@ -209,18 +209,18 @@ def _hostile(source: random.Random) -> str:
     if kind == 1:
         return "".join(source.choices(string.printable, k=source.randrange(1, 40)))
     words = ["x", "a", "(", ")", "**", "9", "1/2", "-", "~", "exp", ",", "I", "oo", "[", "]", "=", "<", "&", "for ",
-             "if ", ".", "not ", "lambda ", "gamma(", "1e9", "Piecewise(", "hyper(", "_", "\n", "|", " "]  # fmt: skip
+             "if ", ".", "not ", "lambda ", "gamma(", "1e9", "Piecewise(", "hyper(", "_", "\n", "|", " "]
     if kind <= 3:
         return "".join(source.choices(words, k=source.randrange(1, 25)))
     if kind <= 5:
         good = source.choice(["x**(a-1)*exp(-b*x)", "hyper([a, b], [1], -x)", "besselj(0, b*x)/(x**2 + a**2)",
-                              "Piecewise((x, a > b), (0, True))", "log(1 + x)**2/gamma(a)"])  # fmt: skip
+                              "Piecewise((x, a > b), (0, True))", "log(1 + x)**2/gamma(a)"])
         place, cut = source.randrange(len(good)), source.randrange(4)
         return good[:place] + source.choice(words) + good[place + cut:]
     name = source.choice([*FUNCTIONS, "open", "eval", "__import__", "getattr", "globals", "print", "type", "Symbol"])
     attack = source.choice(["{0}({1})", "{0}({0}({0}({1})))", "{0}({1}, {1})", "{1}.{0}", "{0}.__class__({1})",
                             "{1}**{0}", "({1})**({1})**({1})", "[{0} for {0} in {1}]", "{0}({1}" + "({1}" * 9,
-                            "{0}(" * 15 + "{1}"])  # fmt: skip
+                            "{0}(" * 15 + "{1}"])
     return attack.format(name, source.choice(["9**9", "x", "-1", "10**9", "os", "1e60", "1/0", "a" * 50, "0", "I*9"]))
 
 
