@@ -7,6 +7,7 @@ from types import ModuleType
 from typing import TYPE_CHECKING, Any
 
 if TYPE_CHECKING:
+    from .batch import evaluate_many
     from .closed_form import ClosedForm
     from .integrate import closed_form, integrate, mellin, principal_value
     from .inverse_transform import inverse_transform
@@ -29,6 +30,7 @@ _HOMES = {
     "disable": "pipelines",
     "enable": "pipelines",
     "evaluate_integrals": "pipelines",
+    "evaluate_many": "batch",
     "extend_sympy": "pipelines",
     "integrate": "integrate",
     "inverse_transform": "inverse_transform",
@@ -51,6 +53,7 @@ __all__ = [
     "disable",
     "enable",
     "evaluate_integrals",
+    "evaluate_many",
     "extend_sympy",
     "integrate",
     "inverse_transform",

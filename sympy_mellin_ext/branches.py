@@ -56,9 +56,8 @@ def _is_normal(relation: Relational) -> bool:
     left, right = relation.args
     if left.is_number or not isinstance(left, Expr) or not isinstance(right, Expr):
         return False
-    if left.is_Add or left.is_Mul:
-        if left.args[0].is_Rational or left.could_extract_minus_sign():
-            return False
+    if (left.is_Add or left.is_Mul) and (left.args[0].is_Rational or left.could_extract_minus_sign()):
+        return False
     return bool(right.is_Rational) or relation.canonical == relation
 
 

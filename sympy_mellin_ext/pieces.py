@@ -10,7 +10,6 @@ from sympy import Abs, Add, Expr, I, Mul, S, acos, binomial, chebyshevt, chebysh
 from sympy.logic.boolalg import Boolean
 
 from .expanding import expanded
-
 from .gamma import GammaProduct, Ladder
 from .gamma.laurent import Series, cosine_series, cotangent_series, exponential, multiply, power_series
 from .gamma.shortest import positive_power

@@ -2,13 +2,11 @@
 from __future__ import annotations
 
 import pytest
-from mpmath import almosteq, mpc, mpf
-from mpmath import airyai, pi, sqrt, workdps
+from mpmath import airyai, almosteq, mpc, mpf, pi, sqrt, workdps
 from mpmath import erfc as erfc_number
 from mpmath import exp as exp_number
 from sympy import (
     Expr,
-    Function,
     Mul,
     Rational,
     Symbol,

@@ -8,7 +8,6 @@ from sympy import (
     Piecewise,
     Rational,
     S,
-    Symbol,
     besselj,
     cos,
     cot,

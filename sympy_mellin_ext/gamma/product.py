@@ -12,7 +12,6 @@ from typing import NamedTuple
 from sympy import Add, Expr, Integer, Mul, Pow, Rational, S, Symbol, sympify
 
 from ..expanding import expanded
-
 from .laurent import Series, gamma_series, linear_series, multiply, power_series, sine_series
 from .shortest import positive_power, shortest_quotient
 

@@ -12,7 +12,6 @@ from sympy import (
     Poly,
     Pow,
     S,
-    cancel,
     count_ops,
     factor,
     factor_terms,
@@ -56,7 +55,7 @@ def shortest_sum(total: Expr) -> Expr:
         if symbols and total.is_rational_function(*symbols):
             candidates.append(total.expand())
             if len(total.args) <= _MOST_FRACTIONS:
-                candidates.append(_conjugates_joined(factor(cancel(total))))
+                candidates.append(_conjugates_joined(factor(total)))
         else:
             candidates.append(factor_terms(joined, sign=True))
     return _evaluated(_shortest(candidates))

@@ -126,8 +126,8 @@ def _nothing_to_gather(total: Any) -> bool:
     if len(terms) != 1:
         return False
     sums = 0
-    for factor in Mul.make_args(terms[0]):
-        base, exponent = factor.as_base_exp()
+    for part in Mul.make_args(terms[0]):
+        base, exponent = part.as_base_exp()
         if base.is_Add:
             plain = all(a.is_Atom or (a.is_Pow and a.base.is_Symbol and a.exp.is_Integer) for a in base.args)
             if not plain or exponent.is_Integer:

@@ -6,7 +6,7 @@ from sympy import Expr, I, Rational, airyai, airyaiprime, besseli, besselj, bess
 from ..gamma import GammaProduct
 from .table import Row
 
-_H, _T = Rational(1, 2), Rational(1, 3)
+_H, _T, _QUARTER = Rational(1, 2), Rational(1, 3), Rational(1, 4)
 of = GammaProduct.of
 
 
@@ -14,7 +14,7 @@ def _j(nu: Expr) -> GammaProduct:
     return of(up=[(nu / 2, _H)], down=[(1 + nu / 2, -_H)], constant=_H, scale=_H)
 
 
-def _k(nu: Expr, constant: Expr = Rational(1, 4)) -> GammaProduct:
+def _k(nu: Expr, constant: Expr = _QUARTER) -> GammaProduct:
     return of(up=[(nu / 2, _H), (-nu / 2, _H)], constant=constant, scale=_H)
 
 

@@ -106,7 +106,8 @@ def _argument(expr: Expr, z: Symbol, t: Expr) -> Interval:
             return None
         ends = (base[0] * expr.exp, base[1] * expr.exp)
         return min(ends), max(ends)
-    return _function(expr, z, t)
+    _function(expr, z, t)
+    return None
 
 
 def _times(factors: list[Interval]) -> Interval:

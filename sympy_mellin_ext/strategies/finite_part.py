@@ -194,7 +194,8 @@ def poles_cancel(pieces: Sequence[Piece], principal: bool) -> bool:
         for _ in range(piece.logs):
             total = multiply(total, series, n)
         # (1 - exp(r*y))**(-1) = -1/(r*y) * (1 + r*y/2 + ...)**(-1), Bernoulli numbers (DLMF 24.2.1)
-        bernoullis = tuple(bernoulli(j) * (-1 if j == 1 and bernoulli(1) > 0 else 1) * r**j / factorial(j) for j in range(n))
+        numbers = [S.One, -S.Half, *(bernoulli(j) for j in range(2, n))][:n]
+        bernoullis = tuple(b * r**j / factorial(j) for j, b in enumerate(numbers))
         for _ in range(n):
             total = multiply(total, Series(-1, bernoullis, -1 / r), n)
         total = total.times(piece.constant * a**piece.power)

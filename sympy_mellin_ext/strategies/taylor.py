@@ -71,7 +71,8 @@ class TaylorSeries:
         if region.empty or condition is S.false:
             return problem.refuse("diverges", "at 0 or at 1")
         value = collect_powers(coefficient * total)
-        return ClosedForm(value, condition, None, self.name, (Step("integrated term by term", "DLMF 16.5.2", value),), (_SOURCE, "DLMF 16.5.2"))
+        steps = (Step("integrated term by term", "DLMF 16.5.2", value),)
+        return ClosedForm(value, condition, None, self.name, steps, (_SOURCE, "DLMF 16.5.2"))
 
 
 class ZetaCoefficients:
