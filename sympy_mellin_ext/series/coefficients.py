@@ -73,7 +73,7 @@ class CoefficientForm:
 
 def linear(expr: Expr, n: Symbol) -> tuple[Expr, Expr] | None:
     """``(shift, slope)`` of an expression linear in ``n``, else None."""
-    if expr is n:
+    if expr == n:
         return S.Zero, S.One
     if expr.is_Mul or expr.is_Pow:
         expr = expr.expand()
@@ -82,7 +82,7 @@ def linear(expr: Expr, n: Symbol) -> tuple[Expr, Expr] | None:
         if not term.has_free(n):
             shift.append(term)
             continue
-        factors = [a for a in Mul.make_args(term) if a is not n]
+        factors = [a for a in Mul.make_args(term) if a != n]
         if len(factors) != len(Mul.make_args(term)) - 1 or any(a.has_free(n) for a in factors):
             return None
         slope.append(Mul(*factors))
@@ -112,7 +112,7 @@ class _Reader:
             return True
         if node.is_Mul:
             return all(self.take(a, e) for a in node.args)
-        if node is self.n:
+        if node == self.n:
             return self.root(S.Zero, S.One, e)
         if isinstance(node, exp):
             return self.power(S.Exp1, node.exp, e)

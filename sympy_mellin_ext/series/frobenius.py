@@ -273,7 +273,7 @@ def pieces(f: Expr, x: Symbol, size: int) -> Pieces:
     NoSeries
         Where ``f`` has no such expansion, or none that is known here.
     """
-    if f is x:
+    if f == x:
         return {S.One: [S.One] + [S.Zero] * (size - 1)}
     if not f.has_free(x):
         return {S.Zero: [f] + [S.Zero] * (size - 1)}

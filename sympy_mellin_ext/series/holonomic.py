@@ -127,7 +127,7 @@ def taylor_transform(f: Expr, x: Symbol, facts: HasSign | None = None) -> Taylor
 
 def _has_loose_power(f: Expr, x: Symbol) -> bool:
     """Whether a factor ``x**alpha`` may be all that kept the expression from being known."""
-    return any(a.is_Pow and a.base is x for a in Mul.make_args(f))
+    return any(a.is_Pow and a.base == x for a in Mul.make_args(f))
 
 
 def _only_reciprocal(f: Expr, x: Symbol) -> bool:
@@ -135,9 +135,9 @@ def _only_reciprocal(f: Expr, x: Symbol) -> bool:
     stack, seen = [f], False
     while stack:
         node = stack.pop()
-        if node is x:
+        if node == x:
             return False
-        if node.is_Pow and node.base is x:
+        if node.is_Pow and node.base == x:
             if not node.exp.is_negative:
                 return False
             seen = True

@@ -89,7 +89,7 @@ def constants_of(f: Expr, x: Symbol) -> list[Expr] | None:
         count += 1
         if count > _MOST_NODES:
             return None
-        if node is x or node.is_Rational:
+        if node == x or node.is_Rational:
             continue
         if not node.has_free(x):
             if node.is_Add or node.is_Mul or (node.is_Pow and node.exp.is_Integer):
@@ -241,7 +241,7 @@ class Tower:
         return known
 
     def _build(self, node: Expr) -> Element:
-        if node is self.x:
+        if node == self.x:
             return {(): self.X}
         if node.is_Rational:
             return self.scalar(QQ(node.p, node.q))
@@ -398,7 +398,7 @@ def order_power(f: Expr, x: Symbol) -> Rational | None:
     """The largest ``1/q`` such that every power ``x**p`` inside ``f`` is a power of ``x**(1/q)``."""
     q = 1
     for node in f.atoms(Pow):
-        if node.base is x:
+        if node.base == x:
             if not node.exp.is_Rational:
                 return None
             q = q * node.exp.q // _gcd(q, node.exp.q)
@@ -416,7 +416,7 @@ def split_power(f: Expr, x: Symbol) -> tuple[Expr, Expr]:
     alpha, rest = [], []
     for factor in Mul.make_args(f):
         base, exponent = factor.as_base_exp()
-        if base is x and not exponent.has_free(x):
+        if base == x and not exponent.has_free(x):
             alpha.append(exponent)
         else:
             rest.append(factor)

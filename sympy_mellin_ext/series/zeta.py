@@ -180,7 +180,7 @@ def _argument(argument: Expr, x: Symbol) -> tuple[Expr, Expr, Expr] | None:
     a, rest = argument.as_independent(x, as_Add=True)
     scale, power = rest.as_independent(x, as_Add=False)
     base, ratio = power.as_base_exp()
-    return (a, scale, ratio) if base is x and not ratio.has_free(x) else None
+    return (a, scale, ratio) if base == x and not ratio.has_free(x) else None
 
 
 def _plain(terms: list[Expr], x: Symbol) -> dict[Term, Expr] | None:
@@ -192,12 +192,12 @@ def _plain(terms: list[Expr], x: Symbol) -> dict[Term, Expr] | None:
             base, e = factor.as_base_exp()
             if not factor.has_free(x):
                 constant *= factor
-            elif base is x and not e.has_free(x):
+            elif base == x and not e.has_free(x):
                 exponent += e
             elif isinstance(factor, log) and len(logs) == 1:
                 c, power = factor.args[0].as_independent(x, as_Add=False)
                 inner, r = power.as_base_exp()
-                if inner is not x or r.has_free(x) or not c.is_positive:
+                if inner != x or r.has_free(x) or not c.is_positive:
                     return None
                 logs = [log(c), r]
             else:
@@ -296,7 +296,7 @@ def _special_term(f: Expr, x: Symbol) -> tuple[Expr, Expr, Expr, list[Expr]] | N
             base, e = factor.as_base_exp()
             if not factor.has_free(x):
                 c *= factor
-            elif base is x and not e.has_free(x):
+            elif base == x and not e.has_free(x):
                 front += e
             elif node is None:
                 node = factor
