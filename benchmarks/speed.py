@@ -24,6 +24,8 @@ import mpmath
 import sympy
 from sympy import Add, Expr, Mul, Symbol, exp, lambdify, oo, srepr
 from sympy.core.cache import clear_cache
+from sympy.functions.elementary.piecewise import ExprCondPair
+from sympy.functions.special.hyper import TupleArg
 
 from sympy_mellin_ext import closed_form, integrate
 
@@ -81,7 +83,7 @@ def compare(entry: Entry, seconds: float) -> dict[str, Any] | None:
     if any(classify(answer, entry)[0] != SOLVED for answer in answers):
         return None
     code = compile(srepr(answers[0]), entry.name, "eval")
-    names = vars(sympy) | {"ExprCondPair": sympy.functions.elementary.piecewise.ExprCondPair}
+    names = vars(sympy) | {"ExprCondPair": ExprCondPair, "TupleArg": TupleArg}
     construct = cold(lambda: eval(code, dict(names)), 5)  # our own srepr
     a, b = statistics.median(ours), statistics.median(stock)
     return {"id": entry.name, "ours": a, "stock": b, "ratio": b / a, "construct": construct}
