@@ -124,7 +124,7 @@ def regions(results: Sequence[Result]) -> list[str]:
     counted = [r for r in results if "region" in r]
     counts = Counter(r["region"] for r in counted)
     lines = ["regions at 60 random points each: "
-             + ", ".join(f"{k} {counts[k]}" for k in ("exact", "narrow", "wide"))]
+             + ", ".join(f"{k} {counts[k]}" for k in ("exact", "beyond", "narrow", "wide"))]
     for r in counted:
         if r["region"] != "exact":
             lines.append(f"  {r['region']:7}{r['id']:20} {shortened(r['condition'], 70)} at {r['witness']}")

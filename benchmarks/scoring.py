@@ -80,17 +80,23 @@ def classify(answer: Any, entry: Entry) -> tuple[str, str]:
 
 
 def compare_region(condition: Any, entry: Entry, count: int = 60) -> tuple[str, str]:
-    """'exact', 'narrow' or 'wide' (claims more than is true), with the first point that shows it."""
-    verdict, witness = "exact", ""
+    """'exact', 'narrow' or 'wide' (claims more than the list), with the first point that shows it."""
+    verdict, point = region_witness(condition, entry, count)
+    return verdict, "" if point is None else str(point)
+
+
+def region_witness(condition: Any, entry: Entry, count: int = 60) -> tuple[str, dict[Any, Any] | None]:
+    """As `compare_region`, with the point itself."""
+    verdict, witness = "exact", None
     for point in random_points(entry, count):
         true_region, ours = holds(entry.valid, point), holds(condition, point)
         if true_region is None or ours is true_region:
             continue
         if true_region:
             if verdict == "exact":
-                verdict, witness = "narrow", str(point)
+                verdict, witness = "narrow", point
         elif verdict != "wide":
-            verdict, witness = "wide", str(point)
+            verdict, witness = "wide", point
     return verdict, witness
 
 
@@ -161,8 +167,11 @@ def _own(entry: Entry, seconds: float, regions: bool) -> dict[str, Any]:
             return {"strategy": ""}
         result = {"strategy": found.strategy or "unnamed"}
         if regions and entry.valid is not None:
-            verdict, witness = compare_region(found.condition, entry)
-            result.update(region=verdict, witness=witness, condition=str(found.condition))
+            verdict, witness = region_witness(found.condition, entry)
+            # a list may state less than is true: quadrature at the very point decides
+            if verdict == "wide" and found.verify(digits=5, points=[witness]).ok is True:
+                verdict = "beyond"
+            result.update(region=verdict, witness=str(witness or ""), condition=str(found.condition))
         return result
     except OutOfTime:
         return {"strategy": "", "trouble": f"closed_form: over {seconds:g} s"}

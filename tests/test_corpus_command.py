@@ -93,7 +93,7 @@ def test_command_on_a_file(tmp_path, capsys):
     assert results["gammas-1"]["region"] == results["moments-1"]["region"] == "exact"
     assert results["gammas-1"]["ratio"] > 0
     text = capsys.readouterr().out
-    assert "geometric mean" in text and "exact 2, narrow 0, wide 0" in text
+    assert "geometric mean" in text and "exact 2, beyond 0, narrow 0, wide 0" in text
 
 
 def test_command_lists_what_is_not_solved(tmp_path, capsys, monkeypatch):
