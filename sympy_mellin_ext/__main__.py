@@ -167,7 +167,6 @@ def _evaluate(options: argparse.Namespace) -> int:
 
 def _shown(entry: Entry, record: Record, form: str) -> str:
     from .batch.outputs import counted, formula, read_back, verdict
-    from .batch.source import MODULE_HEAD, function_source
 
     if form == "json":
         return json.dumps(record, indent=1, ensure_ascii=False)
@@ -177,7 +176,10 @@ def _shown(entry: Entry, record: Record, form: str) -> str:
         found = read_back(entry, record)
         if found is None:
             return f"# no closed form: {record['reason'] or record['status']}"
-        return f"{MODULE_HEAD.format(title='integral')}\n\n{function_source('integral', entry, *found)}".rstrip()
+        try:
+            return found.source(name="integral").rstrip()
+        except ValueError as error:
+            return f"# no numerical function: {error}"
     lines = [("closed form", record["value"] if record["status"] in ("solved", "stock") else "none found")]
     lines += [("", f"{value}  where {where}") for where, value in record.get("special", [])]
     if record["status"] in ("solved", "stock"):

@@ -448,9 +448,8 @@ def test_outputs(tmp_path: Path) -> None:
     with mp.workdps(40):
         near = 1 + mp.mpf(10) ** -12
         expected = mp.pi * (1 - 2 ** (near - 1)) / mp.sin(mp.pi * near)
-        assert abs(module.removable(near, digits=15) - expected) < 1e-15
-    with pytest.raises(ValueError, match="outside the region"):
-        module.removable(2.5)
+    assert abs(module.removable(near) - expected) < 1e-15
+    assert mp.isnan(module.removable(2.5))
     assert not hasattr(module, "integral_lambda")
     assert [p.name for p in write_sweeps(pairs, tmp_path / "sweeps")] == ["removable.csv"]
     rows = list(csv.reader((tmp_path / "sweeps" / "removable.csv").open()))

@@ -12,12 +12,13 @@ from keyword import iskeyword
 from pathlib import Path
 from typing import Any, TextIO
 
-from sympy import Expr, Integral, S, latex
+from sympy import Integral, S, latex
 
+from ..closed_form import ClosedForm
+from ..numeric.build import function_text, support_text
 from .entry import Entry
 from .journal import Record
 from .safe import InputError, read_condition, read_expression
-from .source import MODULE_HEAD, function_source
 
 Pair = tuple[Entry, Record]
 
@@ -92,18 +93,19 @@ def _cut(text: str, width: int) -> str:
     return text if len(text) <= width else text[:width - 3] + "..."
 
 
-def read_back(entry: Entry, record: Mapping[str, Any]) -> tuple[Expr, Any, list[tuple[Any, Expr]]] | None:
-    """Value, condition and special values of a record as SymPy objects; None if there is no value to be read."""
+def read_back(entry: Entry, record: Mapping[str, Any]) -> ClosedForm | None:
+    """The closed form of a record; None if there is no value to be read."""
     if record["status"] not in ("solved", "stock") or record["value"] is None:
         return None
     known = {s.name: s for s in entry.parameters}
     try:
         value = read_expression(record["value"], known)
         condition = S.true if record["condition"] == "True" else read_condition(record["condition"], known)
-        special = [(read_condition(c, known), read_expression(v, known)) for c, v in record.get("special", [])]
+        special = tuple((read_condition(c, known), read_expression(v, known)) for c, v in record.get("special", []))
     except InputError:
         return None
-    return value, condition, special
+    return ClosedForm(value, condition, strategy=record.get("strategy", ""), special=special,
+                      integrand=entry.integrand, limits=entry.limits, given=entry.given)
 
 
 def formula(entry: Entry, record: Mapping[str, Any]) -> str:
@@ -113,10 +115,9 @@ def formula(entry: Entry, record: Mapping[str, Any]) -> str:
     if found is None:
         text = record["reason"] or record["value"] or record["status"]
         return rf"{integral} : \quad \text{{{_escaped(text)}}}"
-    value, condition, special = found
-    where = "" if condition is S.true else rf",\qquad {latex(condition)}"
-    more = "".join(rf",\quad {latex(v)} \text{{ at }} {latex(c)}" for c, v in special)
-    return f"{integral} = {latex(value)}{where}{more}"
+    where = "" if found.condition is S.true else rf",\qquad {latex(found.condition)}"
+    more = "".join(rf",\quad {latex(v)} \text{{ at }} {latex(c)}" for c, v in found.special)
+    return f"{integral} = {latex(found.value)}{where}{more}"
 
 
 def write_tex(pairs: Sequence[Pair], title: str, path: Path) -> None:
@@ -156,15 +157,22 @@ def identifiers(names: Sequence[str]) -> list[str]:
 
 
 def write_module(pairs: Sequence[Pair], title: str, path: Path) -> None:
-    """A Python module with one numerical function for each entry that has a value."""
-    parts = [MODULE_HEAD.format(title=title.replace("\\", " ").replace('"', "'"))]
+    """A Python module, which needs mpmath only, with a numerical function for each entry that has a value."""
+    # the docstring of the support text gives way to the title
+    support = support_text("mpmath").partition('"""\n')[2]
+    heading = title.replace("\\", " ").replace('"', "'")
+    parts = [f'"""{heading}: one numerical function an integral."""\n{support}']
     names = identifiers([entry.name for entry, _ in pairs])
     for name, (entry, record) in zip(names, pairs, strict=True):
         found = read_back(entry, record)
+        lacking = " ".join((record["reason"] or record["status"]).split())
         if found is not None:
-            parts.append(function_source(name, entry, *found))
-        else:
-            parts.append(f"# {entry.name}: no function, {' '.join((record['reason'] or record['status']).split())}\n")
+            try:
+                parts.append(function_text(found, "mpmath", None, name, f"_of_{name}"))
+                continue
+            except ValueError as error:  # a function without numerical values
+                lacking = " ".join(str(error).split())
+        parts.append(f"# {entry.name}: no function, {lacking}\n")
     path.write_text("\n\n".join(parts), encoding="utf-8")
 
 

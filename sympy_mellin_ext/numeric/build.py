@@ -48,6 +48,13 @@ def source_of(
     answer: ClosedForm, backend: str = "mpmath", args: Sequence[Symbol | str] | None = None, name: str = "closed_form"
 ) -> str:
     """See :meth:`ClosedForm.source`."""
+    return support_text(backend) + "\n\n" + function_text(answer, backend, args, name)
+
+
+def function_text(
+    answer: ClosedForm, backend: str, args: Sequence[Symbol | str] | None, name: str, suffix: str = ""
+) -> str:
+    """The function without what it needs; a suffix keeps its helpers apart from those of others in one module."""
     if backend not in BACKENDS:
         raise ValueError(f"backend must be one of {', '.join(BACKENDS)}, not {backend!r}")
     if not name.isidentifier():
@@ -58,21 +65,22 @@ def source_of(
     printer = MpmathPrinter(all_names) if backend == "mpmath" else NumpyPrinter(all_names)
     heading = ", ".join(names[p] for p in parameters)
     lines = [
-        f"def _value({heading}):",
+        f"def _value{suffix}({heading}):",
         f"    return {printer.text(answer.value)}",
         "",
         "",
-        f"def _inside({heading}):",
+        f"def _inside{suffix}({heading}):",
         f"    return {printer.condition(region)}",
         "",
         "",
     ]
-    call = f"_evaluated(_value, _inside, ({heading}{',' if len(parameters) == 1 else ''})"
+    call = f"_evaluated(_value{suffix}, _inside{suffix}, ({heading}{',' if len(parameters) == 1 else ''})"
     if isinstance(printer, NumpyPrinter):
         found = watch(answer.value, parameters)
         ways = moving_forms(found, parameters, printer)
-        lines += [f"def _hazards({heading}):", "    return [", *(f"        {w}," for w in ways), "    ]", "", ""]
-        call += f", _hazards, {found.rates!r}, {found.relative!r}"
+        lines += [f"def _hazards{suffix}({heading}):", "    return ["]
+        lines += [*(f"        {w}," for w in ways), "    ]", "", ""]
+        call += f", _hazards{suffix}, {found.rates!r}, {found.relative!r}"
     what = " ".join(str(answer.value).split())
     lines += [
         f"def {name}({heading}):",
@@ -83,14 +91,17 @@ def source_of(
         '    """',
         f"    return {call})",
     ]
-    return _support(backend) + "\n\n" + "\n".join(lines) + "\n"
+    return "\n".join(lines) + "\n"
 
 
 def _plain(text: str) -> str:
     return text.replace("\\", "/").replace('"', "'")
 
 
-def _support(backend: str) -> str:
+def support_text(backend: str) -> str:
+    """What the generated functions of a backend need."""
+    if backend not in BACKENDS:
+        raise ValueError(f"backend must be one of {', '.join(BACKENDS)}, not {backend!r}")
     return files(__package__).joinpath(f"support_{backend}.py").read_text(encoding="utf-8").rstrip() + "\n"
 
 
