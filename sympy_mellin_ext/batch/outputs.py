@@ -58,7 +58,7 @@ def coloured(stream: TextIO) -> bool:
 def summary(records: Sequence[Record], total: int, width: int = 100, colour: bool = False) -> list[str]:
     """The table for the terminal: a line each, reasons below where there are any, and the counts."""
     lines = []
-    size = min(max((len(r["name"]) for r in records), default=4), 28)
+    size = min(max((len(r["name"]) for r in records), default=4), 40)
     room = max(width - size - 46, 20)
     lines.append(f"{'name':{size}}  {'status':8} {'seconds':>8}  {'quadrature':20}  closed form, region")
     lines.append("-" * len(lines[0]))

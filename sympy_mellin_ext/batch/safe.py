@@ -1,15 +1,13 @@
 """Expressions from text that nobody vouches for.
 
-Python's own parser turns the text into a syntax tree; nothing of it is ever run.  Nodes of a few kinds are read,
-names only from the tables of :mod:`.names` and from the declared symbols, and no number is built before it is known
-to be small.  Everything else is refused with its position.
+Python's own parser turns the text into a syntax tree (:mod:`.syntax`); nothing of it is ever run.  Nodes of a few
+kinds are read, names only from the tables of :mod:`.names` and from the declared symbols, and no number is built
+before it is known to be small.  Everything else is refused with its position.
 """
 from __future__ import annotations
 
 import ast
-import re
 import time
-import warnings
 from collections.abc import Mapping, Sequence
 from difflib import get_close_matches
 from fractions import Fraction
@@ -23,19 +21,15 @@ from sympy.core.relational import Relational
 from sympy.logic.boolalg import Boolean, BooleanAtom
 
 from .names import ASSUMPTIONS, CONSTANTS, FUNCTIONS, LARGE, LIGHT, LOGIC, RELATIONS, SIZED, STRUCTURED
+from .syntax import MAX_DEPTH, InputError, syntax_tree
 
-MAX_LENGTH = 10_000
-MAX_DEPTH = 40
 MAX_NODES = 3_000
 MAX_CALLS = 8
 MAX_STEEP = 2  # of functions that are slow to build
 MAX_SECONDS = 1.0  # of processor time, between two steps
-MAX_DIGITS = 60
 MAX_BITS = 8_192
 MAX_EXPONENT = 1_000
 
-_CHARACTERS = re.compile(r"[\w\s+\-*/().,<>=!&|~\[\]]*")
-_LONG_DIGITS = re.compile(rf"[0-9_]{{{MAX_DIGITS + 1},}}")
 _COMPARE: dict[type, str] = {
     ast.Lt: "Lt", ast.LtE: "Le", ast.Gt: "Gt", ast.GtE: "Ge", ast.Eq: "Eq", ast.NotEq: "Ne",
 }  # fmt: skip
@@ -44,35 +38,6 @@ _PLAIN: dict[type, str] = {
     ast.Lambda: "lambda", ast.Subscript: "subscripts (a[b])", ast.IfExp: "if ... else", ast.Await: "await",
     ast.NamedExpr: "assignments", ast.Starred: "starred arguments",
 }  # fmt: skip
-
-
-class InputError(ValueError):
-    """Text that is refused: what is wrong with it, and where.
-
-    Attributes
-    ----------
-    problem : str
-    text : str
-    position : int or None
-        Index of the character in `text`.
-    """
-
-    def __init__(self, problem: str, text: str = "", position: int | None = None) -> None:
-        super().__init__(problem, text, position)
-        self.problem, self.text, self.position = problem, text, position
-
-    def __str__(self) -> str:
-        if self.position is None:
-            return self.problem
-        return f"{self.problem} (at position {self.position + 1})"
-
-    def pointed(self) -> str:
-        """The message, with the place marked under the text where that is short enough."""
-        if self.position is None or not self.text or not self.text.isprintable():
-            return str(self)
-        start = max(0, self.position - 40)
-        shown = self.text[start:start + 78]
-        return f"{self}\n    {shown}\n    {' ' * (self.position - start)}^"
 
 
 def read_expression(text: str, symbols: Mapping[str, Symbol] | None = None) -> Expr:
@@ -149,63 +114,18 @@ def suggestion(word: str, known: Any) -> str:
 
 class _Reader:
     def __init__(self, text: str, symbols: Mapping[str, Symbol]) -> None:
-        if not isinstance(text, str):
-            raise InputError(f"text is expected, not {type(text).__name__}")
         self.text, self.symbols = text, symbols
         self.nodes = self.calls = self.steep = 0
         self.start = time.thread_time()
-        self.flat = ""
-        self.shift = 0
+        self.flat, self.shift, self.tree = syntax_tree(text)
 
     def read(self) -> Any:
-        tree = self._tree()
-        value = self._node(tree, 0)
+        value = self._node(self.tree, 0)
         if isinstance(value, tuple):
-            raise self._error("one formula is expected, not several with commas between", tree)
+            raise self._error("one formula is expected, not several with commas between", self.tree)
         if isinstance(value, Expr) and value.has(nan, zoo):
             raise InputError("the expression is infinite or undefined", self.text)
         return value
-
-    def _tree(self) -> ast.expr:
-        text = self.text
-        if len(text) > MAX_LENGTH:
-            raise InputError(f"the text is too long: {len(text)} characters, at most {MAX_LENGTH} are accepted")
-        if not text.strip():
-            raise InputError("an expression is expected, the text is empty", text)
-        match = _CHARACTERS.match(text)
-        end = match.end() if match else 0
-        if end < len(text):
-            hint = "; powers are written **" if text[end] == "^" else ""
-            raise InputError(f"character {text[end]!r} is not accepted{hint}", text, end)
-        long = _LONG_DIGITS.search(text)
-        if long:
-            raise InputError(f"a number has more than {MAX_DIGITS} digits", text, long.start())
-        self._brackets()
-        self.flat = re.sub(r"\s", " ", text).lstrip()
-        self.shift = len(text) - len(self.flat)
-        try:
-            with warnings.catch_warnings():
-                warnings.simplefilter("error")  # Python warns of doubtful spellings such as 1if or 1(x)
-                return ast.parse(self.flat, mode="eval").body
-        except SyntaxError as error:
-            column = min(max((error.offset or 1) - 1, 0), len(self.flat)) + self.shift
-            raise InputError("not a formula: a name, number or operator is missing or misplaced", text,
-                             column) from None
-        except (ValueError, MemoryError, RecursionError, OverflowError, Warning):
-            raise InputError("not a formula, or nested too deeply", text) from None
-
-    def _brackets(self) -> None:
-        """Brackets match and are not nested too deeply; Python's parser can take very long where they do not."""
-        pairs, stack = {")": "(", "]": "["}, []
-        for position, character in enumerate(self.text):
-            if character in "([":
-                stack.append((character, position))
-                if len(stack) > MAX_DEPTH:
-                    raise InputError(f"brackets are nested more than {MAX_DEPTH} deep", self.text, position)
-            elif character in pairs and (not stack or stack.pop()[0] != pairs[character]):
-                raise InputError(f"{character} has no matching {pairs[character]}", self.text, position)
-        if stack:
-            raise InputError(f"{stack[-1][0]} is not closed", self.text, stack[-1][1])
 
     def _error(self, problem: str, node: ast.AST) -> InputError:
         # the syntax tree counts bytes of UTF-8
